@@ -1,0 +1,49 @@
+import { fileURLToPath } from 'node:url'
+import vue from '@vitejs/plugin-vue'
+import { defineConfig } from 'vitest/config'
+
+const apiPort = process.env.FANLIGHT_API_PORT ?? '3000'
+
+export default defineConfig({
+  plugins: [vue()],
+  resolve: { alias: { '@': fileURLToPath(new URL('./src', import.meta.url)) } },
+  worker: { format: 'es' },
+  build: { target: 'es2022', manifest: true },
+  server: { proxy: { '/api': { target: `http://127.0.0.1:${apiPort}` } } },
+  test: {
+    projects: [
+      {
+        extends: true,
+        test: { name: 'unit', include: ['tests/unit/**/*.test.ts'], exclude: ['tests/unit/src/**'] },
+      },
+      {
+        extends: true,
+        test: { name: 'client', environment: 'jsdom', include: ['tests/unit/src/**/*.test.ts'] },
+      },
+      { extends: true, test: { name: 'reference', include: ['tests/reference/**/*.test.ts'] } },
+      {
+        extends: true,
+        test: { name: 'simulation', include: ['tests/simulation/**/*.test.ts'], testTimeout: 120_000 },
+      },
+      {
+        extends: true,
+        test: {
+          name: 'api',
+          include: ['tests/api/**/*.test.ts'],
+          testTimeout: 60_000,
+          hookTimeout: 60_000,
+        },
+      },
+      {
+        extends: true,
+        test: {
+          name: 'browser',
+          include: ['tests/browser/**/*.test.ts'],
+          testTimeout: 180_000,
+          hookTimeout: 180_000,
+          fileParallelism: false,
+        },
+      },
+    ],
+  },
+})
