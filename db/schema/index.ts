@@ -1,0 +1,3 @@
+export * from './people.ts'
+export * from './things.ts'
+export * from './work.ts'
