@@ -1,6 +1,7 @@
 import type { FilmImportMapping, RejectedRow } from '../contracts/film-imports.ts'
 import { mappingWidthProblem } from './mapping-problem.ts'
 import { readFilmRow, type ImportedReading } from './read-film-row.ts'
+import type { QuoteState } from './row-splitter.ts'
 
 /** Widest row that a mapping can point into (columns 0 to 499). */
 export const columnsMax = 500
@@ -14,10 +15,8 @@ export type ReaderOutcome =
   | { readonly kind: 'file-refused'; readonly sentence: string }
 
 export interface FilmRowReader {
-  /**
-   * The next row of the file. `quotesDamaged`: the tokeniser found quotation marks that do not pair up in it.
-   */
-  row(cells: readonly string[], options?: { readonly quotesDamaged?: boolean }): ReaderOutcome
+  /** The next row of the file, with what the tokeniser said about its quotation marks. */
+  row(cells: readonly string[], quotes?: QuoteState): ReaderOutcome
   /** Line of the file, from 1, on which the next row begins. */
   nextLine(): number
 }
@@ -28,11 +27,11 @@ const lineBreaksIn = (cells: readonly string[]) => cells.reduce((sum, cell) => s
  * Reads the rows of one file in their order: skips header rows and blank rows, counts lines (a quoted cell may hold line
  * ends), and refuses rows wider than the table, because an unquoted decimal comma makes two plausible cells of one.
  *
- * Tokenise with line ends normalised to LF, blank rows kept and quotes as RFC 4180 has them (`csvTokeniserOptions`).
+ * The rows come from `createRowSplitter`, in the file's order.
  *
  * @example
  * const reader = createFilmRowReader(mapping)
- * for (const cells of rows) handle(reader.row(cells))
+ * for (const { cells, quotes } of rows) handle(reader.row(cells, quotes))
  */
 export function createFilmRowReader(mapping: FilmImportMapping): FilmRowReader {
   let rowsSeen = 0
@@ -53,9 +52,12 @@ export function createFilmRowReader(mapping: FilmImportMapping): FilmRowReader {
 
   return {
     nextLine: () => line,
-    row(cells, options = {}) {
+    row(cells, quotes = 'paired') {
       const rowLine = line
       line += 1 + lineBreaksIn(cells)
+      if (quotes === 'unclosed') {
+        return { kind: 'file-refused', sentence: `A quotation mark in line ${rowLine} or after it is never closed, so the rest of the file cannot be split into cells. Mend it and import again.` }
+      }
       const isHeader = rowsSeen < mapping.headerRows
       rowsSeen++
       let filled = cells.length
@@ -67,8 +69,8 @@ export function createFilmRowReader(mapping: FilmImportMapping): FilmRowReader {
       }
       if (filled === 0) return { kind: 'blank' }
       const rejected = (...reasons: string[]): ReaderOutcome => ({ kind: 'rejected', line: rowLine, cells: [...cells], reasons })
-      if (options.quotesDamaged === true) {
-        const lastLine = line - 1
+      const lastLine = line - 1
+      if (quotes === 'damaged') {
         return rejected(lastLine > rowLine
           ? `Quotation marks do not pair up: lines ${rowLine} to ${lastLine} run together.`
           : 'Quotation marks do not pair up.')

@@ -8,6 +8,7 @@ export { guessHeaderRows } from './guess-header-rows.ts'
 
 // Tokenising
 export { createLineEndNormaliser } from './line-ends.ts'
+export { createRowSplitter, tokeniserOf, type QuoteState, type SplitterOutcome, type TokenisedRow, type Tokeniser } from './row-splitter.ts'
 export { csvTokeniserOptions, rowCharactersMax } from './tokeniser-options.ts'
 
 // What the columns mean
