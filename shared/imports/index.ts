@@ -23,6 +23,7 @@ export { readFilmRow, type ImportedReading, type RowOutcome } from './read-film-
 export { readNumberCell, looksLikeFormula, cellCharactersMax, type NumberCell, type NumberRefusal } from './number-cell.ts'
 export { stateOf, type FilmReadingState } from './state-words.ts'
 export { exposureUnitOf, lengthUnitOf, unitLabels, type ExposureUnit, type LengthUnit } from './unit-words.ts'
+export { shortened } from './shortened.ts'
 
 // Writing
 export { toCsv, csvCell, type CsvValue } from './to-csv.ts'

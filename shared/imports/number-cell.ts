@@ -1,4 +1,5 @@
 import type { DecimalMark } from './detect-decimal-mark.ts'
+import { shortened } from './shortened.ts'
 
 /** A number as it stands in a cell: kept as decimal text, so that a unit prefix shifts it without rounding. */
 export type NumberCell =
@@ -67,7 +68,7 @@ export function readNumberCell(cell: string, decimalMark: DecimalMark): NumberCe
   if (cell.includes('\0')) return refused('zero-byte', 'holds a zero byte, which no text file should')
   const text = cell.trim().replace(/^\u2212/, '-')
   if (text === '') return { kind: 'empty' }
-  const shown = `“${text.length > 40 ? `${text.slice(0, 40)}…` : text}”`
+  const shown = `“${shortened(text, 40)}”`
   if (errorValue.test(text)) return refused('error-value', `is ${shown}, which is no measured value`)
   if (looksLikeFormula(text)) return refused('formula', `is ${shown}, which looks like a spreadsheet formula; formulas are never calculated here`)
   if (dateLooking.some(shape => shape.test(text))) {

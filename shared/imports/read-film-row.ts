@@ -1,6 +1,7 @@
 import type { FilmImportMapping, RejectedRow } from '../contracts/film-imports.ts'
 import { cellCharactersMax, looksLikeFormula, readNumberCell } from './number-cell.ts'
 import { exposureOf, isTimeUnit, micrometresOf } from './scale.ts'
+import { shortened } from './shortened.ts'
 import { stateOf, type FilmReadingState } from './state-words.ts'
 import { exposureUnitOf, lengthUnitOf, unitLabels } from './unit-words.ts'
 
@@ -41,7 +42,7 @@ function readExposure(cell: string, mapping: FilmImportMapping): Read<number> {
   const { unit: columnUnit } = mapping.exposure
   const unit = read.unitText === '' ? columnUnit : exposureUnitOf(read.unitText)
   if (unit === null || isTimeUnit(unit) !== isTimeUnit(columnUnit)) {
-    return { reason: `Exposure: the cell says “${read.unitText.slice(0, 40)}”, the column is in ${unitLabels[columnUnit]}.` }
+    return { reason: `Exposure: the cell says “${shortened(read.unitText, 40)}”, the column is in ${unitLabels[columnUnit]}.` }
   }
   const value = exposureOf(read, unit)
   if (value === 0) return { reason: 'Exposure: is zero; an exposure must be above zero.' }
@@ -55,7 +56,7 @@ function readLength(cell: string, what: string, unitOfColumn: FilmImportMapping[
   if (read.kind === 'empty') return { value: null }
   if (read.kind === 'refused') return { reason: `${what}: the cell ${read.sentence}.` }
   const unit = read.unitText === '' ? unitOfColumn : lengthUnitOf(read.unitText)
-  if (unit === null) return { reason: `${what}: the cell says “${read.unitText.slice(0, 40)}”, the column is in ${unitLabels[unitOfColumn]}.` }
+  if (unit === null) return { reason: `${what}: the cell says “${shortened(read.unitText, 40)}”, the column is in ${unitLabels[unitOfColumn]}.` }
   const value = micrometresOf(read, unit)
   if (Math.abs(value) > depthMicrometresMax) return { reason: `${what}: is more than 100 mm, too much to be meant.` }
   return { value }
@@ -66,7 +67,7 @@ function readState(cell: string, depthCell: string): Read<FilmReadingState | nul
   const state = stateOf(cell)
   if (state !== null) return { value: state }
   if (looksLikeFormula(cell)) return { reason: 'State: looks like a spreadsheet formula; formulas are never calculated here.' }
-  return { reason: `State: “${cell.trim().slice(0, 40)}” is none of measured, no film, lost in wash, excluded.` }
+  return { reason: `State: “${shortened(cell.trim(), 40)}” is none of measured, no film, lost in wash, excluded.` }
 }
 
 function readReplicate(cell: string | null): Read<string | null> {

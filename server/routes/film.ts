@@ -1,0 +1,9 @@
+import { getFilmReadingHistory, listFilmReadings, saveFilmReadings } from '#shared/contracts/film.ts'
+import { historyOfReading, pageOfReadings, saveReadings } from '../services/film-readings.ts'
+import type { Binder } from './binder.ts'
+
+export function filmRoutes(binder: Binder): void {
+  binder.implementInShop(listFilmReadings, ({ params, query, database }) => pageOfReadings(database, params, query))
+  binder.implementInShop(saveFilmReadings, ({ params, body, database, actor }) => saveReadings(database, params, body.readings, actor))
+  binder.implementInShop(getFilmReadingHistory, ({ params, database }) => historyOfReading(database, params, params.readingId))
+}
