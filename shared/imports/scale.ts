@@ -3,28 +3,32 @@ import type { ExposureUnit, LengthUnit } from './unit-words.ts'
 /** Powers of ten go into the exponent of the decimal text, so that 0.07 mm is 70 µm and not 70.00000000000001. */
 interface Scale {
   readonly power: number
-  readonly factor: number
+  /** Whole numbers: a mil is 254 tenths of a micrometre, and 25.4 itself is not exact in binary. */
+  readonly times: number
+  readonly dividedBy: number
 }
+
+const powerOfTen = (power: number): Scale => ({ power, times: 1, dividedBy: 1 })
 
 /** To seconds, or to mJ/cm² (1 mJ/cm² = 10 J/m²). */
 const exposureScale: Readonly<Record<ExposureUnit, Scale>> = {
-  s: { power: 0, factor: 1 },
-  ms: { power: -3, factor: 1 },
-  'mJ/cm2': { power: 0, factor: 1 },
-  'J/m2': { power: -1, factor: 1 },
+  s: powerOfTen(0),
+  ms: powerOfTen(-3),
+  'mJ/cm2': powerOfTen(0),
+  'J/m2': powerOfTen(-1),
 }
 
 /** To micrometres (1 inch = 25.4 mm exactly; 1 mil = a thousandth of it). */
 const lengthScale: Readonly<Record<LengthUnit, Scale>> = {
-  um: { power: 0, factor: 1 },
-  mm: { power: 3, factor: 1 },
-  mil: { power: -1, factor: 254 },
-  in: { power: 2, factor: 254 },
+  um: powerOfTen(0),
+  mm: powerOfTen(3),
+  mil: { power: 0, times: 254, dividedBy: 10 },
+  in: { power: 2, times: 254, dividedBy: 1 },
 }
 
 type Decimal = { readonly mantissa: string; readonly exponent: number }
 
-const scaled = (decimal: Decimal, scale: Scale) => Number(`${decimal.mantissa}e${decimal.exponent + scale.power}`) * scale.factor
+const scaled = (decimal: Decimal, scale: Scale) => (Number(`${decimal.mantissa}e${decimal.exponent + scale.power}`) * scale.times) / scale.dividedBy
 
 /** A decimal number in an exposure unit as seconds or mJ/cm²; may be infinite where the text says so. */
 export const exposureOf = (decimal: Decimal, unit: ExposureUnit): number => scaled(decimal, exposureScale[unit])

@@ -1,0 +1,16 @@
+import type { FilmImportMapping } from '#shared/contracts/film-imports.ts'
+
+/** A comma-separated file with exposure in s, thickness in µm, state, note: what the tests start from. */
+export const plainMapping: FilmImportMapping = Object.freeze({
+  encoding: 'utf-8',
+  delimiter: ',',
+  decimalMark: '.',
+  headerRows: 1,
+  exposure: { column: 0, unit: 's' },
+  depth: { column: 1, unit: 'um' },
+  state: null,
+  uncertainty: null,
+  replicate: null,
+  note: null,
+  substrateThicknessMicrometres: 0,
+})
