@@ -1,0 +1,27 @@
+/** Film: the working curve from cured-film thicknesses, and what it says about exposures. */
+
+// The curve
+export { fitWorkingCurve, type WorkingCurveOptions } from './fit-working-curve.ts'
+export { depthAt, type DepthAt } from './depth-at.ts'
+export { exposureForDepth } from './exposure-for-depth.ts'
+export { curvatureOf, type Curvature } from './curvature.ts'
+export { implausibleReadings, type Implausible } from './implausible-readings.ts'
+
+// Layers
+export { compareLayerRules, exposureForLayer, type ExposureForLayer, type LayerRuleComparison } from './exposure-for-layer.ts'
+export { exposureFromProven, type ExposureFromProven } from './exposure-from-proven.ts'
+export { defaultRuleValues, type CompleteRule, type LayerRuleChoice } from './layer-rules.ts'
+export { printThrough, type PrintThrough } from './print-through.ts'
+
+// Planning and comparing
+export { planFilmExposures, type FilmPlan, type GaugeVerdict } from './plan-film-exposures.ts'
+export { compareWorkingCurves, type ComparisonOutcome, type PotencyComparison } from './compare-working-curves.ts'
+
+/** Changes when the same readings would give other digits: kept with every stored fit. */
+export const filmLibraryVersion = 'film-1'
+
+export type {
+  ExposureForDepth, ExposureKind, FilmPoint, FilmReading, FilmReadingState, FilmWeighting, Finding, FindingSeverity,
+  LayerRule, LayerRuleName, WorkingCurveFit, WorkingCurveOutcome, WorkingCurveRefusal,
+} from './types.ts'
+export type { Estimate, Interval } from '../stats/types.ts'
