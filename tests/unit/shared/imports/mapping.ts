@@ -1,7 +1,7 @@
 import type { FilmImportMapping } from '#shared/contracts/film-imports.ts'
 
 /** A comma-separated file with exposure in s, thickness in µm, state, note: what the tests start from. */
-export const plainMapping: FilmImportMapping = Object.freeze({
+export const plainMapping: FilmImportMapping = {
   encoding: 'utf-8',
   delimiter: ',',
   decimalMark: '.',
@@ -13,4 +13,4 @@ export const plainMapping: FilmImportMapping = Object.freeze({
   replicate: null,
   note: null,
   substrateThicknessMicrometres: 0,
-})
+}
