@@ -9,8 +9,13 @@ export { randomNormal, seededRandom, type RandomSource } from './random.ts'
 
 // Lines
 export { fitStraightLine, type StraightLine } from './straight-line.ts'
+export { leastSquares, type LeastSquares, type LeastSquaresOutcome } from './least-squares.ts'
 export { lackOfFit, type LackOfFit } from './lack-of-fit.ts'
 
 // Intervals
 export { fieller } from './fieller.ts'
 export { moverSum, negate, type Ranged } from './mover.ts'
+
+// Nonlinear curves
+export { fitNonlinear, type NonlinearOptions } from './fit-nonlinear.ts'
+export type { NonlinearFit, NonlinearJacobian, NonlinearModel, NonlinearOutcome, NonlinearRefusal } from './nonlinear-types.ts'
