@@ -14,6 +14,7 @@ export interface Film {
 /**
  * Checks readings once and averages repeated readings of one film.
  *
+ * A film measured at or below zero is no film by the gauge: it is listed and does not enter, like "no film".
  * Readings of one film at different exposures are taken as different films: a film has one exposure.
  *
  * @throws {StatsError} `exposure-out-of-range`, `depth-out-of-range`, `uncertainty-out-of-range`
@@ -22,6 +23,7 @@ export function collectFilms(readings: readonly FilmReading[]): {
   readonly films: readonly Film[]
   readonly excludedIndexes: readonly number[]
   readonly censoredIndexes: readonly number[]
+  readonly notAboveZeroIndexes: readonly number[]
 } {
   const films: { exposure: number; depths: number; variances: number; stated: boolean; ids: string[]; indexes: number[] }[] = []
   const byFilm = new Map<string, (typeof films)[number]>()
@@ -59,8 +61,10 @@ export function collectFilms(readings: readonly FilmReading[]): {
     if (reading.id !== undefined) film.ids.push(reading.id)
     film.indexes.push(index)
   }
+  // Judged after averaging: a film of -1 and 4 µm is a thin film, one of -1 and 0 µm is none.
+  const there = films.filter(film => film.depths > 0)
   return {
-    films: films.map(film => ({
+    films: there.map(film => ({
       exposure: film.exposure,
       logExposure: Math.log(film.exposure),
       depthMicrometres: film.depths / film.indexes.length,
@@ -70,5 +74,6 @@ export function collectFilms(readings: readonly FilmReading[]): {
     })),
     excludedIndexes,
     censoredIndexes,
+    notAboveZeroIndexes: there.length === films.length ? [] : films.filter(film => !(film.depths > 0)).flatMap(film => film.indexes),
   }
 }

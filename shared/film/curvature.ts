@@ -1,16 +1,5 @@
 import { tTwoSidedTail } from '../stats/quantiles.ts'
-import type { WorkingCurveFit } from './types.ts'
-
-export interface Curvature {
-  /** Coefficient of (ln E)², in µm. */
-  readonly coefficient: number
-  readonly standardError: number
-  readonly t: number
-  readonly degreesOfFreedom: number
-  readonly pValue: number
-  /** ln exposure above which the bend shows: where the parabola crosses the line for the second time. */
-  readonly turnLogExposure: number
-}
+import type { Curvature, WorkingCurveFit } from './types.ts'
 
 /**
  * Does adding (ln E)² to the line help? Needs no replicates.
@@ -19,7 +8,7 @@ export interface Curvature {
  *
  * @returns null with fewer than three exposures or no degree of freedom left
  */
-export function curvatureOf(fit: WorkingCurveFit): Curvature | null {
+export function curvatureOf(fit: Pick<WorkingCurveFit, 'degreesOfFreedom' | 'levelCount' | 'centre' | 'points' | 'residualStandardDeviation'>): Curvature | null {
   const degreesOfFreedom = fit.degreesOfFreedom - 1
   if (degreesOfFreedom < 1 || fit.levelCount < 3) return null
   const { meanLogExposure, sumSquaresLogExposure, sumWeights } = fit.centre
@@ -30,9 +19,13 @@ export function curvatureOf(fit: WorkingCurveFit): Curvature | null {
   const tilt = cubes / sumSquaresLogExposure
   let products = 0
   let squares = 0
-  const bend = x.map(value => value * value - meanSquare - tilt * value)
+  let least = Infinity
+  let greatest = -Infinity
+  const bendAt = (value: number): number => value * value - meanSquare - tilt * value
   for (const [i, point] of fit.points.entries()) {
-    const value = bend[i] ?? 0
+    const value = bendAt(x[i] ?? 0)
+    least = Math.min(least, x[i] ?? 0)
+    greatest = Math.max(greatest, x[i] ?? 0)
     products += point.weight * value * point.residualMicrometres
     squares += point.weight * value * value
   }
@@ -48,6 +41,8 @@ export function curvatureOf(fit: WorkingCurveFit): Curvature | null {
     t,
     degreesOfFreedom,
     pValue: tTwoSidedTail(t, degreesOfFreedom),
+    thinEndMicrometres: coefficient * bendAt(least),
+    thickEndMicrometres: coefficient * bendAt(greatest),
     turnLogExposure: meanLogExposure + tilt / 2 + Math.sqrt(tilt * tilt / 4 + meanSquare),
   }
 }

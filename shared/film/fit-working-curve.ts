@@ -1,8 +1,10 @@
 import { fieller } from '../stats/fieller.ts'
+import { lackOfFit } from '../stats/lack-of-fit.ts'
 import { tQuantile } from '../stats/quantiles.ts'
 import { fitStraightLine, type StraightLine } from '../stats/straight-line.ts'
 import { StatsError, type Interval } from '../stats/types.ts'
 import { collectFilms, type Film } from './collect-films.ts'
+import { curvatureOf } from './curvature.ts'
 import { exponentiate } from './exponentiate.ts'
 import { filmFindings } from './film-findings.ts'
 import type { ExposureKind, FilmPoint, FilmReading, FilmWeighting, WorkingCurveFit, WorkingCurveOutcome, WorkingCurveRefusal } from './types.ts'
@@ -29,7 +31,7 @@ function weightOf(film: Film, weighting: FilmWeighting): number {
  *
  * Straight-line least squares on ln exposure with t and Fieller intervals: 94 to 95.5 % coverage from four exposures on
  * (`npm run simulate`). Repeated readings of one film are averaged first. Films that did not form or were lost do not
- * enter as zeros; they are listed, and `fitCensoredWorkingCurve` uses them.
+ * enter as zeros, nor do films measured at or below zero; they are listed, and `fitCensoredWorkingCurve` uses them.
  *
  * Source: P. F. Jacobs, Rapid Prototyping & Manufacturing (SME, 1992), the working-curve equation, from memory.
  *
@@ -45,27 +47,26 @@ export function fitWorkingCurve(options: WorkingCurveOptions): WorkingCurveOutco
   if (!(confidenceLevel > 0 && confidenceLevel < 1)) {
     throw new StatsError('level-out-of-range', `confidenceLevel must be inside (0, 1), got ${confidenceLevel}`)
   }
-  const { films, excludedIndexes, censoredIndexes } = collectFilms(readings)
+  const { films, ...leftOut } = collectFilms(readings)
   const first = films[0]
   if (first === undefined) return refuse('no-films', 'No film is measured yet. Measure films at three or more exposures.')
   if (films.length === 1) return refuse('one-film', 'One film makes no curve. Measure films at three or more exposures.')
-  if (films.every(film => film.exposure === first.exposure)) {
+  // A difference in the last digits of a typed exposure is no second exposure.
+  if (films.every(film => Math.abs(film.logExposure - first.logExposure) < 1e-9)) {
     return refuse('one-exposure', 'All films have one exposure. A curve needs at least two, better six.')
   }
   if (weighting === 'stated' && films.some(film => film.standardUncertaintyMicrometres === null)) {
     return refuse('uncertainty-missing', 'Weighting by stated uncertainty needs an uncertainty for each film.')
   }
-  if (weighting === 'proportional' && films.some(film => film.depthMicrometres <= 0)) {
-    return refuse('depth-not-positive', 'Weighting by a percentage needs depths above zero. Check the substrate, or weight equally.')
-  }
   const x = films.map(film => film.logExposure)
   const y = films.map(film => film.depthMicrometres)
   const weights = films.map(film => weightOf(film, weighting))
   const line = fitStraightLine(weighting === 'equal' ? { x, y } : { x, y, weights })
-  if (!(line.slope > 0)) {
+  // Beyond e^±600 the critical exposure leaves the range of numbers: such a slope is rounding, not a curve.
+  if (!(line.slope > 0) || Math.abs(line.meanX - line.meanY / line.slope) > 600) {
     return refuse('slope-not-positive', 'The films do not get thicker with exposure. Check that exposures and thicknesses stand in the right rows.')
   }
-  return assemble({ films, weights, line, exposureKind, weighting, confidenceLevel, excludedIndexes, censoredIndexes })
+  return assemble({ films, weights, line, exposureKind, weighting, confidenceLevel, ...leftOut })
 }
 
 function assemble(parts: {
@@ -77,11 +78,18 @@ function assemble(parts: {
   confidenceLevel: number
   excludedIndexes: readonly number[]
   censoredIndexes: readonly number[]
+  notAboveZeroIndexes: readonly number[]
 }): WorkingCurveFit {
   const { films, weights, line, confidenceLevel } = parts
   const { slope, meanX, meanY, degreesOfFreedom } = line
   const told = degreesOfFreedom > 0
-  const variance = told ? line.residualSumOfSquares / degreesOfFreedom : 0
+  const depths = films.map(film => film.depthMicrometres)
+  const exposures = films.map(film => film.exposure)
+  const depthMax = greatest(depths)
+  // Films that lie on a line to the last digits leave rounding, which is no scatter to test anything with.
+  const rounding = line.sumWeights * (1e-13 * depthMax) ** 2
+  const residualSumOfSquares = line.residualSumOfSquares > rounding ? line.residualSumOfSquares : 0
+  const variance = told ? residualSumOfSquares / degreesOfFreedom : 0
   const quantile = told ? tQuantile(0.5 + confidenceLevel / 2, degreesOfFreedom) : 0
   const slopeVariance = variance / line.sumSquaresX
   const meanVariance = variance / line.sumWeights
@@ -111,7 +119,7 @@ function assemble(parts: {
     const free = 1 - leverage
     // With the film left out, the residual variance has one degree of freedom less.
     const varianceWithout = degreesOfFreedom > 1 && free > 1e-12
-      ? (line.residualSumOfSquares - (weight * residual * residual) / free) / (degreesOfFreedom - 1)
+      ? (residualSumOfSquares - (weight * residual * residual) / free) / (degreesOfFreedom - 1)
       : 0
     return {
       exposure: film.exposure,
@@ -126,8 +134,6 @@ function assemble(parts: {
       studentisedResidual: varianceWithout > 0 ? (residual * Math.sqrt(weight)) / Math.sqrt(varianceWithout * free) : null,
     }
   })
-  const depths = films.map(film => film.depthMicrometres)
-  const exposures = films.map(film => film.exposure)
   const fit: WorkingCurveFit = {
     kind: 'fitted',
     exposureKind: parts.exposureKind,
@@ -148,16 +154,26 @@ function assemble(parts: {
     cooksDistances: points.map(point => point.cooksDistance),
     measuredRange: {
       depthMicrometresMin: least(depths),
-      depthMicrometresMax: greatest(depths),
+      depthMicrometresMax: depthMax,
       exposureMin: least(exposures),
       exposureMax: greatest(exposures),
     },
     excludedIndexes: parts.excludedIndexes,
     censoredIndexes: parts.censoredIndexes,
+    notAboveZeroIndexes: parts.notAboveZeroIndexes,
+    checks: { curvature: null, lackOfFit: null },
     findings: [],
     centre: { meanLogExposure: meanX, meanDepthMicrometres: meanY, sumSquaresLogExposure: line.sumSquaresX, sumWeights: line.sumWeights },
   }
-  return { ...fit, findings: filmFindings(fit) }
+  const checked = variance > 0 ? { ...fit, checks: checksOf(fit, { x: films.map(film => film.logExposure), y: depths, weights, residualSumOfSquares }) } : fit
+  return { ...checked, findings: filmFindings(checked) }
+}
+
+function checksOf(
+  fit: WorkingCurveFit,
+  data: { x: readonly number[]; y: readonly number[]; weights: readonly number[]; residualSumOfSquares: number },
+): WorkingCurveFit['checks'] {
+  return { curvature: curvatureOf(fit), lackOfFit: lackOfFit({ ...data, parameters: 2 }) }
 }
 
 // Spreading 100,000 values into Math.min overflows the stack.

@@ -4,7 +4,7 @@
 export { fitWorkingCurve, type WorkingCurveOptions } from './fit-working-curve.ts'
 export { depthAt, type DepthAt } from './depth-at.ts'
 export { exposureForDepth } from './exposure-for-depth.ts'
-export { curvatureOf, type Curvature } from './curvature.ts'
+export { curvatureOf } from './curvature.ts'
 export { implausibleReadings, type Implausible } from './implausible-readings.ts'
 
 // Layers
@@ -21,7 +21,7 @@ export { compareWorkingCurves, type ComparisonOutcome, type PotencyComparison } 
 export const filmLibraryVersion = 'film-1'
 
 export type {
-  ExposureForDepth, ExposureKind, FilmPoint, FilmReading, FilmReadingState, FilmWeighting, Finding, FindingSeverity,
+  Curvature, ExposureForDepth, ExposureKind, FilmPoint, FilmReading, FilmReadingState, FilmWeighting, Finding, FindingSeverity,
   LayerRule, LayerRuleName, WorkingCurveFit, WorkingCurveOutcome, WorkingCurveRefusal,
 } from './types.ts'
 export type { Estimate, Interval } from '../stats/types.ts'

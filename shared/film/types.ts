@@ -1,3 +1,4 @@
+import type { LackOfFit } from '../stats/lack-of-fit.ts'
 import type { Estimate, Interval, Refused } from '../stats/types.ts'
 
 /** `seconds` on one printer, or radiant exposure in mJ/cm² where the irradiance is known. */
@@ -58,15 +59,34 @@ export interface Finding {
     | 'slope-not-established'
     | 'critical-exposure-open'
     | 'weighting-proportional'
-    | 'implausible'
+    | 'replicates-identical'
+    | 'not-above-zero'
     | 'censored-left-out'
+    | 'outside-range'
+    | 'interval-open'
   readonly severity: FindingSeverity
   readonly sentence: string
-  readonly numbers: Readonly<Record<string, number>>
+  readonly numbers: Readonly<Record<string, number | string>>
   readonly formula?: string
   readonly source?: string
   /** Positions of the readings it speaks of. */
   readonly readingIndexes?: readonly number[]
+}
+
+/** What adding (ln E)² to the line would change; shown always, since few films cannot show a slight bend. */
+export interface Curvature {
+  /** Coefficient of (ln E)², in µm. */
+  readonly coefficient: number
+  readonly standardError: number
+  readonly t: number
+  readonly degreesOfFreedom: number
+  readonly pValue: number
+  /** ln exposure above which the bend shows: where the parabola crosses the line for the second time. */
+  readonly turnLogExposure: number
+  /** How far the bent curve lies above the straight one at the smallest exposure, in µm. */
+  readonly thinEndMicrometres: number
+  /** The same at the largest exposure. */
+  readonly thickEndMicrometres: number
 }
 
 export interface WorkingCurveFit {
@@ -100,6 +120,10 @@ export interface WorkingCurveFit {
   /** Positions of readings that did not enter: excluded ones, and films that did not form or were lost. */
   readonly excludedIndexes: readonly number[]
   readonly censoredIndexes: readonly number[]
+  /** Positions of readings of films measured at or below zero: no film by the gauge, so they do not enter either. */
+  readonly notAboveZeroIndexes: readonly number[]
+  /** Tests of the straight line; null where the films leave nothing to test with. */
+  readonly checks: { readonly curvature: Curvature | null; readonly lackOfFit: LackOfFit | null }
   readonly findings: readonly Finding[]
   /** The line around its weighted centre, from which every answer is made. */
   readonly centre: {
@@ -111,7 +135,7 @@ export interface WorkingCurveFit {
 }
 
 export type WorkingCurveRefusal = Refused<
-  'no-films' | 'one-film' | 'one-exposure' | 'slope-not-positive' | 'uncertainty-missing' | 'depth-not-positive'
+  'no-films' | 'one-film' | 'one-exposure' | 'slope-not-positive' | 'uncertainty-missing'
 >
 
 export type WorkingCurveOutcome = WorkingCurveFit | WorkingCurveRefusal
