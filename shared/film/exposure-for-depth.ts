@@ -41,7 +41,8 @@ export function exposureForDepth(fit: WorkingCurveFit, depthMicrometres: number)
   const { depthMicrometresMin, depthMicrometresMax } = fit.measuredRange
   return {
     depthMicrometres,
-    value: Math.exp(meanLogExposure + distance / slope),
+    // A depth far beyond any film would overflow; the answer stays a number, and says that it is extrapolated.
+    value: Math.min(Number.MAX_VALUE, Math.exp(meanLogExposure + distance / slope)),
     meanInterval: interval(0),
     singleInterval: interval(singleFilmVariance(fit, depthMicrometres)),
     extrapolated: depthMicrometres < depthMicrometresMin || depthMicrometres > depthMicrometresMax,

@@ -1,7 +1,8 @@
+import { circleExtremes } from '../stats/circle-extremes.ts'
 import { tQuantile } from '../stats/quantiles.ts'
 import type { Interval } from '../stats/types.ts'
 import { exponentiate } from './exponentiate.ts'
-import { exposureForDepth } from './exposure-for-depth.ts'
+import { exposureForDepth, singleFilmVariance } from './exposure-for-depth.ts'
 import { checkLayerHeight, completeRule, type CompleteRule, type LayerRuleChoice } from './layer-rules.ts'
 import type { WorkingCurveFit } from './types.ts'
 
@@ -10,7 +11,7 @@ export interface ExposureForLayer {
   readonly layerHeightMicrometres: number
   readonly value: number
   readonly meanInterval: Interval
-  /** For one new film of the target depth; as the mean where the rule has no target depth of its own. */
+  /** For one new film rather than the mean of many: adds one residual variance. */
   readonly singleInterval: Interval
   /** Cured depth that one exposure of this value makes. */
   readonly depthMicrometres: number
@@ -47,28 +48,36 @@ function farSideDose(
 ): ExposureForLayer {
   const { meanLogExposure, meanDepthMicrometres, sumSquaresLogExposure, sumWeights } = fit.centre
   const slope = fit.penetrationDepthMicrometres.value
-  const layers = layerHeightMicrometres / slope
-  const logValue = meanLogExposure - meanDepthMicrometres / slope + Math.log(rule.doseRatio) + Math.log(Math.expm1(layers))
-  // d ln E / d slope; the centre's depth and the slope are uncorrelated, so two terms make the variance.
-  const bySlope = meanDepthMicrometres / slope ** 2 - (layers / slope) / -Math.expm1(-layers)
-  const variance = fit.residualStandardDeviation ** 2 * (1 / (sumWeights * slope ** 2) + bySlope ** 2 / sumSquaresLogExposure)
-  const depth = meanDepthMicrometres + slope * (logValue - meanLogExposure)
-  let interval: Interval = { kind: 'unbounded' }
-  if (fit.degreesOfFreedom > 0) {
-    const half = tQuantile(0.5 + fit.confidenceLevel / 2, fit.degreesOfFreedom) * Math.sqrt(variance)
-    interval = exponentiate({ kind: 'finite', lower: -half, upper: half }, logValue)
+  /** ln E from the depth at the centre and the slope, as distance from the centre. */
+  const logAt = (centreDepth: number, slopeAt: number): number =>
+    slopeAt > 0 ? Math.log(rule.doseRatio) + logExpm1(layerHeightMicrometres / slopeAt) - centreDepth / slopeAt : NaN
+  const log = logAt(meanDepthMicrometres, slope)
+  const depth = meanDepthMicrometres + slope * log
+  const scatter = fit.residualStandardDeviation
+  const interval = (extraVariance: number): Interval => {
+    if (fit.degreesOfFreedom < 1) return { kind: 'unbounded' }
+    const quantile = tQuantile(0.5 + fit.confidenceLevel / 2, fit.degreesOfFreedom)
+    const centreReach = quantile * Math.sqrt(scatter ** 2 / sumWeights + extraVariance)
+    const slopeReach = (quantile * scatter) / Math.sqrt(sumSquaresLogExposure)
+    if (slopeReach >= slope) return { kind: 'unbounded' }
+    // Exact for the t region of the line: the same construction gives Fieller's interval where the rule is linear in depth.
+    const ends = circleExtremes((u, v) => logAt(meanDepthMicrometres + centreReach * u, slope + slopeReach * v))
+    return ends === null ? { kind: 'unbounded' } : exponentiate({ kind: 'finite', ...ends }, meanLogExposure)
   }
   const { depthMicrometresMin, depthMicrometresMax } = fit.measuredRange
   return {
     rule,
     layerHeightMicrometres,
-    value: Math.exp(logValue),
-    meanInterval: interval,
-    singleInterval: interval,
+    value: Math.exp(meanLogExposure + log),
+    meanInterval: interval(0),
+    singleInterval: interval(singleFilmVariance(fit, depth)),
     depthMicrometres: depth,
     extrapolated: depth < depthMicrometresMin || depth > depthMicrometresMax,
   }
 }
+
+/** ln(e^x − 1) without overflow for layers much thicker than Dp. */
+const logExpm1 = (x: number): number => (x > 30 ? x + Math.log1p(-Math.exp(-x)) : Math.log(Math.expm1(x)))
 
 /** Every rule side by side: the rule often moves the answer more than the measurement does. */
 export interface LayerRuleComparison {

@@ -14,6 +14,7 @@ export { lackOfFit, type LackOfFit } from './lack-of-fit.ts'
 
 // Intervals
 export { fieller } from './fieller.ts'
+export { circleExtremes } from './circle-extremes.ts'
 export { moverSum, negate, type Ranged } from './mover.ts'
 
 // Nonlinear curves
