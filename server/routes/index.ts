@@ -1,12 +1,18 @@
 import type { Router } from 'express'
 import type { Dependencies } from '../dependencies.ts'
 import { Binder } from './binder.ts'
+import { developmentRoutes } from './development.ts'
 import { filmImportRoutes } from './film-imports.ts'
 import { filmRoutes } from './film.ts'
+import { memberRoutes } from './members.ts'
+import { sessionRoutes } from './session.ts'
 
 /** Every feature's routes. The order does not matter: paths are disjoint. */
 export function bindRoutes(router: Router, dependencies: Dependencies): Binder {
   const binder = new Binder(router, dependencies)
+  sessionRoutes(binder)
+  memberRoutes(binder)
+  developmentRoutes(binder)
   filmRoutes(binder)
   filmImportRoutes(binder)
   return binder
