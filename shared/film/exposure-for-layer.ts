@@ -37,7 +37,10 @@ export function exposureForLayer(
   checkLayerHeight(layerHeightMicrometres)
   const rule = completeRule(options.rule)
   if (rule.kind === 'far-side-dose') return farSideDose(fit, layerHeightMicrometres, rule)
-  const depth = rule.kind === 'constant-overcure' ? layerHeightMicrometres + rule.overcureMicrometres : layerHeightMicrometres * rule.ratio
+  const depth =
+    rule.kind === 'constant-overcure'
+      ? layerHeightMicrometres + rule.overcureMicrometres
+      : layerHeightMicrometres * rule.ratio
   return { rule, layerHeightMicrometres, ...exposureForDepth(fit, depth) }
 }
 
@@ -50,7 +53,9 @@ function farSideDose(
   const slope = fit.penetrationDepthMicrometres.value
   /** ln E from the depth at the centre and the slope, as distance from the centre. */
   const logAt = (centreDepth: number, slopeAt: number): number =>
-    slopeAt > 0 ? Math.log(rule.doseRatio) + logExpm1(layerHeightMicrometres / slopeAt) - centreDepth / slopeAt : NaN
+    slopeAt > 0
+      ? Math.log(rule.doseRatio) + logExpm1(layerHeightMicrometres / slopeAt) - centreDepth / slopeAt
+      : NaN
   const log = logAt(meanDepthMicrometres, slope)
   const depth = meanDepthMicrometres + slope * log
   const scatter = fit.residualStandardDeviation
@@ -61,7 +66,9 @@ function farSideDose(
     const slopeReach = (quantile * scatter) / Math.sqrt(sumSquaresLogExposure)
     if (slopeReach >= slope) return { kind: 'unbounded' }
     // Exact for the t region of the line: the same construction gives Fieller's interval where the rule is linear in depth.
-    const ends = circleExtremes((u, v) => logAt(meanDepthMicrometres + centreReach * u, slope + slopeReach * v))
+    const ends = circleExtremes((u, v) =>
+      logAt(meanDepthMicrometres + centreReach * u, slope + slopeReach * v),
+    )
     return ends === null ? { kind: 'unbounded' } : exponentiate({ kind: 'finite', ...ends }, meanLogExposure)
   }
   const { depthMicrometresMin, depthMicrometresMax } = fit.measuredRange
@@ -84,19 +91,39 @@ export interface LayerRuleComparison {
   readonly byRule: readonly ExposureForLayer[]
   /** Largest answer over smallest. */
   readonly spreadRatio: number
+  /** Widest finite interval, upper end over lower end; null where no rule has one. */
+  readonly measurementRatio: number | null
+  /** Which of the two decides more. */
+  readonly sentence: string
 }
 
 /**
  * The exposure for a layer height by all rules, with their spread.
  *
  * @param options.rules - one of each kind; the starting values where absent
+ * @example
+ * compareLayerRules(fit, { layerHeightMicrometres: 50 }).spreadRatio
  */
 export function compareLayerRules(
   fit: WorkingCurveFit,
   options: { readonly layerHeightMicrometres: number; readonly rules?: readonly LayerRuleChoice[] },
 ): LayerRuleComparison {
   const rules = options.rules ?? (['constant-overcure', 'constant-ratio', 'far-side-dose'] as const)
-  const byRule = rules.map(rule => exposureForLayer(fit, { layerHeightMicrometres: options.layerHeightMicrometres, rule }))
+  const byRule = rules.map(rule =>
+    exposureForLayer(fit, { layerHeightMicrometres: options.layerHeightMicrometres, rule }),
+  )
   const values = byRule.map(answer => answer.value)
-  return { byRule, spreadRatio: Math.max(...values) / Math.min(...values) }
+  const spreadRatio = Math.max(...values) / Math.min(...values)
+  const widths = byRule.flatMap(({ meanInterval }) =>
+    meanInterval.kind === 'finite' ? [meanInterval.upper / meanInterval.lower] : [],
+  )
+  const measurementRatio = widths.length > 0 ? Math.max(...widths) : null
+  const times = (ratio: number) => ratio.toFixed(2)
+  const sentence =
+    measurementRatio === null
+      ? `The rules differ by a factor of ${times(spreadRatio)}, and the films do not tell the exposure yet.`
+      : spreadRatio > measurementRatio
+        ? `The choice of the rule moves the exposure by a factor of ${times(spreadRatio)}, more than the measurement does (${times(measurementRatio)}): let a print confirm it.`
+        : `The rules differ by a factor of ${times(spreadRatio)}; the interval of the measurement spans ${times(measurementRatio)}.`
+  return { byRule, spreadRatio, measurementRatio, sentence }
 }

@@ -2,6 +2,8 @@
 
 // The curve
 export { fitWorkingCurve, type WorkingCurveOptions } from './fit-working-curve.ts'
+export { workingCurveWithout } from './working-curve-without.ts'
+export { answerFindings } from './answer-findings.ts'
 export { depthAt, type DepthAt } from './depth-at.ts'
 export { exposureForDepth } from './exposure-for-depth.ts'
 export { curvatureOf } from './curvature.ts'
@@ -25,3 +27,13 @@ export type {
   LayerRule, LayerRuleName, WorkingCurveFit, WorkingCurveOutcome, WorkingCurveRefusal,
 } from './types.ts'
 export type { Estimate, Interval } from '../stats/types.ts'
+
+// Other curves
+export { fitDeadTimeCurve } from './fit-dead-time-curve.ts'
+export { fitQuadraticCurve } from './fit-quadratic-curve.ts'
+export { fitTwoLineAttenuation, type TwoLineOptions } from './fit-two-line-attenuation.ts'
+export { modelDepthAt, modelExposureForDepth } from './film-model-answers.ts'
+export { compareFilmModels, type ComparedModel, type FilmModelComparison, type FilmModelName } from './compare-film-models.ts'
+export type {
+  DeadTimeFit, FilmModelFit, FilmModelRefusal, ModelDepth, ModelExposure, ModelExposureOutcome, ModelPoint, QuadraticFit, TwoLineFit,
+} from './film-model-types.ts'

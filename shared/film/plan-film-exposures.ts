@@ -10,6 +10,8 @@ export interface FilmPlan {
   /** Half-width of the interval at the target as a factor: 1.2 means "within a factor of 1.2". */
   readonly expectedFactor: number | null
   readonly gauge: GaugeVerdict
+  /** What to expect of these films, and what the printer's step or range did to the plan. */
+  readonly sentence: string
 }
 
 export interface GaugeVerdict {
@@ -33,7 +35,9 @@ function multiples(films: number): number[] {
   const lower = Array.from({ length: low }, (_, i) => near[i % near.length] ?? 1)
   const upperCount = films - low
   // Geometric from 1.4 to 4; a single upper film goes where slope and safety balance.
-  const upper = Array.from({ length: upperCount }, (_, i) => (upperCount === 1 ? 2.5 : 1.4 * (4 / 1.4) ** (i / (upperCount - 1))))
+  const upper = Array.from({ length: upperCount }, (_, i) =>
+    upperCount === 1 ? 2.5 : 1.4 * (4 / 1.4) ** (i / (upperCount - 1)),
+  )
   return [...lower, ...upper]
 }
 
@@ -86,15 +90,22 @@ export function planFilmExposures(options: {
   readonly confidenceLevel?: number
 }): FilmPlan {
   const { expectedExposureAtTarget: expected, films = 6, stepSeconds, usualExposure = 2 } = options
-  if (!Number.isInteger(films) || films < 3 || films > 100) throw new StatsError('films-out-of-range', `films must be a whole number from 3 to 100, got ${films}`)
-  for (const [name, value] of [['expectedExposureAtTarget', expected ?? 1], ['stepSeconds', stepSeconds], ['usualExposure', usualExposure]] as const) {
-    if (!(value > 0 && Number.isFinite(value))) throw new StatsError('exposure-out-of-range', `${name} must be above zero, got ${value}`)
+  if (!Number.isInteger(films) || films < 3 || films > 100)
+    throw new StatsError('films-out-of-range', `films must be a whole number from 3 to 100, got ${films}`)
+  for (const [name, value] of [
+    ['expectedExposureAtTarget', expected ?? 1],
+    ['stepSeconds', stepSeconds],
+    ['usualExposure', usualExposure],
+  ] as const) {
+    if (!(value > 0 && Number.isFinite(value)))
+      throw new StatsError('exposure-out-of-range', `${name} must be above zero, got ${value}`)
   }
   const { exposureMin = stepSeconds, exposureMax = Infinity } = options
   // Nothing known: 1.5 to 12 times the critical exposure, taken as a quarter of what layers get today.
-  const wanted = expected === null
-    ? Array.from({ length: films }, (_, i) => (usualExposure / 4) * 1.5 * 8 ** (i / (films - 1)))
-    : multiples(films).map(multiple => multiple * expected)
+  const wanted =
+    expected === null
+      ? Array.from({ length: films }, (_, i) => (usualExposure / 4) * 1.5 * 8 ** (i / (films - 1)))
+      : multiples(films).map(multiple => multiple * expected)
   const exposures = wanted.map(exposure => onStep(exposure, stepSeconds, exposureMin, exposureMax))
   const precision = expected === null ? null : expectedPrecision(exposures, expected, options)
   return {
@@ -103,14 +114,42 @@ export function planFilmExposures(options: {
     expectedStandardErrorLog: precision?.standardErrorLog ?? null,
     expectedFactor: precision?.factor ?? null,
     gauge: judgeGauge(options),
+    sentence: planSentence(exposures, precision),
   }
+}
+
+function planSentence(exposures: readonly number[], precision: { factor: number } | null): string {
+  const levels = new Set(exposures).size
+  const parts: string[] = []
+  if (levels < 2)
+    parts.push(
+      'On this step and range all films get one exposure: no curve can come of it. Use a finer step, or a resin or layer that needs longer.',
+    )
+  else if (levels < 4)
+    parts.push(
+      `On this step and range only ${levels} different exposures remain: enough for a line, not to see a bend.`,
+    )
+  if (precision === null && levels >= 2)
+    parts.push('A wide set, to find the curve at all. Plan again around the target once these are measured.')
+  if (precision !== null) {
+    parts.push(
+      precision.factor < 10
+        ? `Expect the exposure for the target within a factor of ${precision.factor.toFixed(2)} at the confidence level, if films scatter as stated or usual.`
+        : 'These films will hardly tell the exposure for the target: add films, or spread them further.',
+    )
+  }
+  return parts.join(' ')
 }
 
 /** SE(ln E) = (σ / Dp) · √(1/n + (x₀ − x̄)² / Sxx), of the design as it will be printed. */
 function expectedPrecision(
   exposures: readonly number[],
   expected: number,
-  options: { readonly penetrationDepthMicrometres?: number; readonly filmSpreadMicrometres?: number; readonly confidenceLevel?: number },
+  options: {
+    readonly penetrationDepthMicrometres?: number
+    readonly filmSpreadMicrometres?: number
+    readonly confidenceLevel?: number
+  },
 ): { standardErrorLog: number; factor: number } | null {
   const depth = options.penetrationDepthMicrometres ?? penetrationDepthDefaultMicrometres
   const spread = options.filmSpreadMicrometres ?? filmSpreadDefaultMicrometres
@@ -118,7 +157,8 @@ function expectedPrecision(
   const mean = x.reduce((a, b) => a + b, 0) / x.length
   const squares = x.reduce((sum, value) => sum + (value - mean) ** 2, 0)
   if (!(squares > 0)) return null
-  const standardErrorLog = (spread / depth) * Math.sqrt(1 / x.length + (Math.log(expected) - mean) ** 2 / squares)
+  const standardErrorLog =
+    (spread / depth) * Math.sqrt(1 / x.length + (Math.log(expected) - mean) ** 2 / squares)
   const quantile = tQuantile(0.5 + (options.confidenceLevel ?? 0.95) / 2, x.length - 2)
   return { standardErrorLog, factor: Math.exp(quantile * standardErrorLog) }
 }
@@ -127,15 +167,33 @@ function expectedPrecision(
  * Whether the caliper is good enough: its repeatability as a share of Dp is the error of ln exposure that one film
  * carries from the gauge alone. Limits chosen from the design table (six films): 3 % needs about 10 µm at Dp 100 µm.
  */
-function judgeGauge(options: { readonly gaugeRepeatabilityMicrometres?: number | null; readonly penetrationDepthMicrometres?: number }): GaugeVerdict {
+function judgeGauge(options: {
+  readonly gaugeRepeatabilityMicrometres?: number | null
+  readonly penetrationDepthMicrometres?: number
+}): GaugeVerdict {
   const repeatability = options.gaugeRepeatabilityMicrometres ?? null
   if (repeatability === null) {
-    return { kind: 'not-stated', sentence: 'How well the caliper repeats is not stated. Measure one film ten times: the standard deviation is its repeatability.' }
+    return {
+      kind: 'not-stated',
+      sentence:
+        'How well the caliper repeats is not stated. Measure one film ten times: the standard deviation is its repeatability.',
+    }
   }
   const depth = options.penetrationDepthMicrometres ?? penetrationDepthDefaultMicrometres
   const share = repeatability / depth
   const percent = `${(100 * share).toFixed(share < 0.1 ? 1 : 0)} %`
-  if (share <= 0.08) return { kind: 'good-enough', sentence: `The caliper is good enough: its repeatability of ${repeatability} µm moves the exposure of one film by ${percent}.` }
-  if (share <= 0.2) return { kind: 'limits-the-answer', sentence: `The caliper limits the answer: its repeatability of ${repeatability} µm moves the exposure of one film by ${percent}. Read each film three times, or use a finer gauge.` }
-  return { kind: 'too-coarse', sentence: `The caliper is too coarse for this resin: its repeatability of ${repeatability} µm moves the exposure of one film by ${percent}. A finer gauge will help more than more films.` }
+  if (share <= 0.08)
+    return {
+      kind: 'good-enough',
+      sentence: `The caliper is good enough: its repeatability of ${repeatability} µm moves the exposure of one film by ${percent}.`,
+    }
+  if (share <= 0.2)
+    return {
+      kind: 'limits-the-answer',
+      sentence: `The caliper limits the answer: its repeatability of ${repeatability} µm moves the exposure of one film by ${percent}. Read each film three times, or use a finer gauge.`,
+    }
+  return {
+    kind: 'too-coarse',
+    sentence: `The caliper is too coarse for this resin: its repeatability of ${repeatability} µm moves the exposure of one film by ${percent}. A finer gauge will help more than more films.`,
+  }
 }
