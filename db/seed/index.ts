@@ -12,9 +12,8 @@ export { demoPeople, type DemoPerson }
 export const demoShopName = 'Quillmere Print Room (demo)'
 
 export interface SeedOptions {
-  readonly database: Database
   /** Dates of the demo shop (a lot that expires soon, work of last week) lie around this moment. */
-  readonly now: Date
+  readonly clock: () => Date
   /** uuid v7 */
   readonly newId: () => string
   readonly hashPassword: (password: string) => Promise<string>
@@ -24,10 +23,13 @@ export interface SeedOptions {
  * Makes the demo shop once, whole or not at all: invented people in every role, printers, resins, lots and film studies.
  * Two servers that start together make one; a shop that is there stays as people left it.
  *
- * @returns whether it was made now
+ * @returns its people with their passwords, to show beside the sign-in
+ * @example
+ * await seedDemoShop(database, { clock: () => new Date(), newId: v7, hashPassword })
  */
-export async function seedDemoShop({ database, now, newId, hashPassword }: SeedOptions): Promise<{ created: boolean }> {
-  return database.transaction(async transaction => {
+export async function seedDemoShop(database: Database, { clock, newId, hashPassword }: SeedOptions): Promise<readonly DemoPerson[]> {
+  const now = clock()
+  await database.transaction(async transaction => {
     const shopId = newId()
     // The unique index shop_one_demo makes a second seeding wait here and then find the first.
     const made = await transaction
@@ -35,7 +37,7 @@ export async function seedDemoShop({ database, now, newId, hashPassword }: SeedO
       .values({ id: shopId, name: demoShopName, demo: true, createdAt: daysFrom(now, -320) })
       .onConflictDoNothing()
       .returning({ id: shop.id })
-    if (made.length === 0) return { created: false }
+    if (made.length === 0) return
 
     const people = await Promise.all(demoPeople.map(async person => ({ person, passwordHash: await hashPassword(person.password) })))
     await transaction
@@ -53,6 +55,6 @@ export async function seedDemoShop({ database, now, newId, hashPassword }: SeedO
 
     const context = { shopId, now, newId, userIds: { engineer: idOf('engineer'), technician: idOf('technician') } }
     await seedStudies(transaction, context, await seedThings(transaction, context))
-    return { created: true }
   })
+  return demoPeople
 }

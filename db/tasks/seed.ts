@@ -10,4 +10,4 @@ await migrateDatabase(url)
 const { database, close } = connectDatabase({ url })
 // Cost as the server's own hashing (OWASP's first recommendation for argon2id).
 const hashPassword = (password: string) => argon2.hash(password, { type: argon2.argon2id, memoryCost: 19_456, timeCost: 2, parallelism: 1 })
-await seedDemoShop({ database, now: new Date(), newId: () => v7(), hashPassword }).finally(close)
+await seedDemoShop(database, { clock: () => new Date(), newId: () => v7(), hashPassword }).finally(close)
