@@ -26,6 +26,8 @@ const schema = z.object({
   DEMO_SHOP: z.enum(['yes', 'no']).optional(),
   /** pino level of the log on standard error. */
   LOG_LEVEL: z.enum(['silent', 'fatal', 'error', 'warn', 'info', 'debug', 'trace']).default('info'),
+  /** Factor on every rate limit: 1 in production; load tests and demonstrations may need more. */
+  RATE_LIMIT_FACTOR: z.coerce.number().min(0.01).max(100_000).default(1),
   /** Folder of the built client; absent in development, where Vite serves it. */
   CLIENT_FOLDER: z.string().optional(),
 })
@@ -43,6 +45,7 @@ export interface Config {
   readonly trustedProxies: number
   readonly demoShop: boolean
   readonly logLevel: string
+  readonly rateLimitFactor: number
   readonly clientFolder: string | null
 }
 
@@ -83,6 +86,7 @@ export function readConfig(environment: Readonly<Record<string, string | undefin
     trustedProxies: settings.TRUSTED_PROXIES,
     demoShop: settings.DEMO_SHOP === undefined ? !production : settings.DEMO_SHOP === 'yes',
     logLevel: settings.LOG_LEVEL,
+    rateLimitFactor: settings.RATE_LIMIT_FACTOR,
     clientFolder: settings.CLIENT_FOLDER ?? null,
   }
 }

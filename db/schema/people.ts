@@ -1,5 +1,5 @@
 import { sql } from 'drizzle-orm'
-import { boolean, check, index, integer, json, jsonb, pgEnum, pgTable, primaryKey, text, timestamp, uniqueIndex, uuid, varchar } from 'drizzle-orm/pg-core'
+import { bigint, boolean, check, index, integer, json, jsonb, pgEnum, pgTable, primaryKey, text, timestamp, uniqueIndex, uuid, varchar } from 'drizzle-orm/pg-core'
 import { id, instant } from './columns.ts'
 
 export const memberRole = pgEnum('member_role', ['owner', 'engineer', 'approver', 'technician', 'viewer'])
@@ -112,3 +112,10 @@ export const idempotencyKey = pgTable('idempotency_key', {
   response: jsonb('response'),
   createdAt: instant('created_at').notNull().default(sql`now()`),
 }, t => [primaryKey({ columns: [t.shopId, t.userId, t.key] })])
+
+/** Counters of rate limits, in the shape that rate-limiter-flexible expects. */
+export const rateLimit = pgTable('rate_limit', {
+  key: varchar('key', { length: 255 }).primaryKey(),
+  points: integer('points').notNull().default(0),
+  expire: bigint('expire', { mode: 'number' }),
+})

@@ -6,6 +6,7 @@ import type { Operation, OperationBody, OperationParams, OperationQuery, Operati
 import { AppError, notFound } from '../errors.ts'
 import type { Dependencies, Executor } from '../dependencies.ts'
 import type { Actor, ShopActor } from '../services/actor.ts'
+import { RateLimits } from '../middleware/rate-limit.ts'
 import { findSignedIn } from '../services/sign-in-lookup.ts'
 import { onceForKey } from '../services/idempotency.ts'
 import { access } from './access.ts'
@@ -57,11 +58,14 @@ function baseVersionOf(operation: Operation, request: Request): number {
 /** Binds operations to handlers: rights, parsing, transactions and answers happen here and nowhere else. */
 export class Binder {
   readonly implemented = new Map<string, Operation>()
+  private readonly rateLimits: RateLimits
 
   constructor(
     private readonly router: Router,
     readonly dependencies: Dependencies,
-  ) {}
+  ) {
+    this.rateLimits = new RateLimits(dependencies.pool, dependencies.config.rateLimitFactor)
+  }
 
   /** For operations outside a shop. */
   implement<O extends Operation>(operation: O, handler: Handler<O>): void {
@@ -81,6 +85,7 @@ export class Binder {
         request,
         response,
       }
+      await this.rateLimits.count(operation.id, request, base.body)
       const run = async (database: Executor) => handler({ ...base, database } as unknown as Call<O>)
       const key = request.get('Idempotency-Key')
       const answer =

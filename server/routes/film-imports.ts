@@ -60,7 +60,7 @@ export function filmImportRoutes(binder: Binder): void {
     const { csv, fileName } = await rejectedRowsCsv(database, params, params.batchId)
     sendFile(response, { text: csv, type: 'text/csv', fileName: `rejected rows of ${fileName.replace(/\.[a-z]{1,5}$/i, '')}.csv` })
   })
-  binder.implementInShop(withdrawFilmImport, ({ params, database, actor }) => withdrawImport(database, params, params.batchId, actor))
-  binder.implementInShop(restoreFilmImport, ({ params, database, actor }) => restoreImport(database, params, params.batchId, actor))
+  binder.implementInShop(withdrawFilmImport, ({ params, actor }) => withdrawImport(dependencies, { key: params, batchId: params.batchId, actor }))
+  binder.implementInShop(restoreFilmImport, ({ params, actor }) => restoreImport(dependencies, { key: params, batchId: params.batchId, actor }))
   binder.implementInShop(findImportMapping, async ({ params, body, database }) => ({ mapping: await findMapping(database, params.shopId, body.header) }))
 }

@@ -5,6 +5,7 @@ import { developmentRoutes } from './development.ts'
 import { filmImportRoutes } from './film-imports.ts'
 import { filmRoutes } from './film.ts'
 import { memberRoutes } from './members.ts'
+import { openApiRoute } from './openapi.ts'
 import { sessionRoutes } from './session.ts'
 
 /** Every feature's routes. The order does not matter: paths are disjoint. */
@@ -15,5 +16,6 @@ export function bindRoutes(router: Router, dependencies: Dependencies): Binder {
   developmentRoutes(binder)
   filmRoutes(binder)
   filmImportRoutes(binder)
+  openApiRoute(router)
   return binder
 }

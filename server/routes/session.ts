@@ -33,10 +33,10 @@ export function sessionRoutes(binder: Binder): void {
   })
 
   binder.implement(contract.signOut, async call => {
-    await new Promise<void>((resolve, reject) => call.request.session.destroy(error => (error ? reject(error) : resolve())))
+    // A new empty session, which is never stored: the old one is gone from the database.
+    await new Promise<void>((resolve, reject) => call.request.session.regenerate(error => (error ? reject(error) : resolve())))
     call.response.clearCookie(sessionCookieName)
-    const view = await describeSession(dependencies, null)
-    return { csrfToken: issueCsrfToken(dependencies.config, call.request, call.response), ...view }
+    return answer(call)
   })
 
   binder.implement(contract.signUp, async ({ body }) => {

@@ -4,6 +4,7 @@ import { filmImportMappingSchema, rejectedRowSchema, type FilmImportMapping, typ
 import { headerSignature, mappingProblem, toCsv } from '#shared/imports/index.ts'
 import type { Dependencies, Executor } from '../dependencies.ts'
 import { AppError, notFound } from '../errors.ts'
+import { recordAudit } from '../repositories/audit.ts'
 import {
   inCopyTransaction, insertBatch, keepMapping, listBatches, readBatch, readBatchRows, readLastColumns, readMapping, restoreBatch, withdrawBatch,
   type ReadingToCopy,
@@ -118,6 +119,10 @@ export async function importReadings(dependencies: Pick<Dependencies, 'database'
     })
     if (!isNew) throw new AppError('conflict', { detail: 'This import id belongs to another import. Choose the file again; nothing was imported.' })
     await copyReadings(key, { batchId, enteredByUserId: actor.userId }, readingsToCopy(parsed, columns, dependencies.newId))
+    await recordAudit(executor, {
+      id: dependencies.newId(), shopId: key.shopId, actorUserId: actor.userId, action: 'imported', thing: 'film import', thingId: batchId,
+      after: { studyId: key.studyId, fileName: call.fileName, acceptedRows: parsed.readings.length, rejectedRows: parsed.rejectedRows },
+    })
     await rememberMapping(executor, key.shopId, mapping, { given: givenHeader, parsed })
     const batch = await readBatch(executor, key, batchId)
     if (batch === null) throw new Error('a stored import was not found again')
@@ -145,10 +150,13 @@ export async function rejectedRowsCsv(database: Executor, key: StudyKey, batchId
   return { csv: toCsv([header, ...body, ...remark], { delimiter }), fileName: stored.fileName }
 }
 
-async function changeBatch(
-  database: Executor,
-  call: { readonly key: StudyKey; readonly batchId: string; readonly actor: ShopActor; readonly withdrawn: boolean },
-) {
+interface BatchChange {
+  readonly key: StudyKey
+  readonly batchId: string
+  readonly actor: ShopActor
+}
+
+async function changeBatch({ database, newId }: Pick<Dependencies, 'database' | 'newId'>, call: BatchChange & { readonly withdrawn: boolean }) {
   const { key, batchId, actor, withdrawn } = call
   return database.transaction(async transaction => {
     const study = await lockOpenStudy(transaction, key)
@@ -156,7 +164,11 @@ async function changeBatch(
     if (batch === null) throw notFound('import')
     // Asked for twice: it stands as asked.
     if ((batch.withdrawnAt !== null) === withdrawn) return { batch, readingsRevision: study.readingsRevision }
-    await (withdrawn ? withdrawBatch : restoreBatch)(transaction, key, { batchId, changedByUserId: actor.userId })
+    const readings = await (withdrawn ? withdrawBatch : restoreBatch)(transaction, key, { batchId, changedByUserId: actor.userId })
+    await recordAudit(transaction, {
+      id: newId(), shopId: key.shopId, actorUserId: actor.userId, action: withdrawn ? 'withdrawn' : 'restored', thing: 'film import', thingId: batchId,
+      after: { studyId: key.studyId, readings },
+    })
     const readingsRevision = await raiseReadingsRevision(transaction, key)
     const after = await readBatch(transaction, key, batchId)
     if (after === null) throw new Error('a stored import was not found again')
@@ -165,12 +177,12 @@ async function changeBatch(
 }
 
 /** Withdraws every reading that the import brought; they can be restored. */
-export const withdrawImport = (database: Executor, key: StudyKey, batchId: string, actor: ShopActor) =>
-  changeBatch(database, { key, batchId, actor, withdrawn: true })
+export const withdrawImport = (dependencies: Pick<Dependencies, 'database' | 'newId'>, change: BatchChange) =>
+  changeBatch(dependencies, { ...change, withdrawn: true })
 
 /** Restores a withdrawn import; readings whose place was taken meanwhile move to the end of their exposure. */
-export const restoreImport = (database: Executor, key: StudyKey, batchId: string, actor: ShopActor) =>
-  changeBatch(database, { key, batchId, actor, withdrawn: false })
+export const restoreImport = (dependencies: Pick<Dependencies, 'database' | 'newId'>, change: BatchChange) =>
+  changeBatch(dependencies, { ...change, withdrawn: false })
 
 /** The mapping that a person of the shop chose for this header before, or null. */
 export async function findMapping(database: Executor, shopId: string, header: readonly string[]): Promise<FilmImportMapping | null> {
