@@ -4,7 +4,7 @@ import { v7 } from 'uuid'
 import { afterAll, beforeAll, beforeEach, describe, expect, it } from 'vitest'
 import type { z } from 'zod'
 import { eq } from 'drizzle-orm'
-import { study } from '#db/schema/index.ts'
+import { auditEvent, study } from '#db/schema/index.ts'
 import { findImportMapping, importFilmReadings, listFilmImports, withdrawFilmImport } from '#shared/contracts/film-imports.ts'
 import { listFilmReadings } from '#shared/contracts/film.ts'
 import { cell, csvHeaders, importPath, plainImportMapping, startFilmShop, type FilmClient, type FilmShop } from '#tests/helpers/film-shop.ts'
@@ -280,6 +280,21 @@ describe('the mapping of a header', () => {
     await put('secret,header\n1.7,0.43\n')
     const other = await shop.makeShop()
     expect(await find(['secret', 'header'], await shop.signIn(other.shopId, 'owner'), other.shopId)).toBeNull()
+  })
+})
+
+describe('the shop’s audit of imports', () => {
+  it('has one line for the import, its withdrawal and its restoring, with who did it', async () => {
+    const { batch } = await put(`${small}x,1\n`)
+    await change(batch.id, 'withdraw')
+    await change(batch.id, 'withdraw')
+    await change(batch.id, 'restore')
+    const events = await shop.db.select().from(auditEvent).where(eq(auditEvent.thingId, batch.id)).orderBy(auditEvent.at)
+    expect(events.map(event => [event.action, event.actorUserId, event.after])).toEqual([
+      ['imported', technician.userId, { studyId, fileName: 'films.csv', acceptedRows: 3, rejectedRows: 1 }],
+      ['withdrawn', technician.userId, { studyId, readings: 3 }],
+      ['restored', technician.userId, { studyId, readings: 3 }],
+    ])
   })
 })
 
