@@ -17,7 +17,7 @@ export interface PotencyComparison {
   readonly parallelism: { readonly t: number; readonly degreesOfFreedom: number; readonly pValue: number }
   /** One ratio for all depths; only where slope equivalence is shown and the wavelengths are the same. */
   readonly pooled:
-    | { readonly kind: 'offered'; readonly value: number; readonly interval: Interval; readonly penetrationDepthMicrometres: number }
+    | { readonly kind: 'offered'; readonly value: number; readonly interval: Interval; readonly penetrationDepthMicrometres: number; readonly sentence: string }
     | Refused<'slopes-not-shown-equal' | 'wavelengths-differ' | 'unequal-weights'>
   readonly extrapolated: boolean
 }
@@ -88,6 +88,8 @@ export function compareWorkingCurves(
   }
 }
 
+const pooledSentence = 'One ratio for all depths, and a narrower interval; right only if both curves truly have one Dp. With Dp 10 % apart, its 95 % become 80 to 90 %.'
+
 /** ln ρ = (x̄₁ − x̄₂) + (ȳ₂ − ȳ₁)/b turned to "second over first", with one slope and Fieller on n − 3 degrees of freedom. */
 function pooledRatio(first: WorkingCurveFit, second: WorkingCurveFit, shown: { equivalenceShown: boolean; sameWavelength: boolean }): PotencyComparison['pooled'] {
   if (!shown.sameWavelength) return { kind: 'refused', reason: 'wavelengths-differ', detail: 'Dp depends on the wavelength: one ratio for all depths needs the same light.' }
@@ -111,5 +113,5 @@ function pooledRatio(first: WorkingCurveFit, second: WorkingCurveFit, shown: { e
     covariance: 0, quantile: tQuantile(0.5 + first.confidenceLevel / 2, degreesOfFreedom),
   })
   const shift = q.meanLogExposure - p.meanLogExposure
-  return { kind: 'offered', value: Math.exp(shift + numerator / slope), interval: exponentiate(interval, shift), penetrationDepthMicrometres: slope }
+  return { kind: 'offered', value: Math.exp(shift + numerator / slope), interval: exponentiate(interval, shift), penetrationDepthMicrometres: slope, sentence: pooledSentence }
 }
