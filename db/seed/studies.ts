@@ -89,7 +89,7 @@ export async function seedStudies(transaction: Transaction, context: SeedContext
   const north = readingsOf(context, ids.northGrey, inventFilms(demoTruths.northGrey), 21)
   const south = readingsOf(context, ids.southGrey, inventFilms(demoTruths.southGrey), 14).map(reading => ({
     ...reading, importBatchId: batchId, enteredByUserId: userIds.engineer, enteredAt: daysFrom(now, -14), updatedAt: daysFrom(now, -14),
-    exposureText: reading.exposureText.replace('.', ','), depthText: reading.depthText.replace('.', ','),
+    exposureText: `${reading.exposureText.replace('.', ',')} s`, depthText: `${reading.depthText.replace('.', ',')} mm`,
   }))
   const amberFilms = inventFilms(demoTruths.wideAmber).map(film =>
     film.exposure === oddFilm.exposure && film.replicate === oddFilm.replicate ? { ...film, depthMicrometres: film.depthMicrometres + oddFilm.addedMicrometres } : film)

@@ -51,6 +51,9 @@ export function filmImportRoutes(binder: Binder): void {
         // A refusal half-way must leave the connection open for its own answer.
         body: request.iterator({ destroyOnReturn: false }),
       })
+    } catch (error) {
+      if (request.destroyed && !request.complete) throw new AppError('bad-request', { detail: 'The upload broke off half-way. Nothing was imported.', cause: error })
+      throw error
     } finally {
       await drain(request)
     }

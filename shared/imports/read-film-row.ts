@@ -5,7 +5,7 @@ import { shortened } from './shortened.ts'
 import { stateOf, type FilmReadingState } from './state-words.ts'
 import { exposureUnitOf, lengthUnitOf, unitLabels } from './unit-words.ts'
 
-/** A row that can be stored. Texts are as they stood in the file. */
+/** A row that can be stored. Texts are as they stood in the file, with the column's unit where the cell names none. */
 export interface ImportedReading {
   readonly kind: 'reading'
   readonly line: number
@@ -33,7 +33,10 @@ const textCharactersMax = 100
 const noteCharactersMax = 400
 const replicateMax = 100_000
 
-type Read<Value> = { readonly value: Value } | { readonly reason: string }
+type Read<Value> = { readonly value: Value; readonly text?: string } | { readonly reason: string }
+
+/** What stands in the file means nothing without its column's unit: 430 is a film in µm and a plank in mm. */
+const withUnit = (cell: string, unitText: string, unit: keyof typeof unitLabels) => (unitText === '' ? `${cell} ${unitLabels[unit]}` : cell)
 
 function readExposure(cell: string, mapping: FilmImportMapping): Read<number> {
   const read = readNumberCell(cell, mapping.decimalMark)
@@ -48,7 +51,7 @@ function readExposure(cell: string, mapping: FilmImportMapping): Read<number> {
   if (value === 0) return { reason: 'Exposure: is zero; an exposure must be above zero.' }
   if (value < 0) return { reason: 'Exposure: is negative; an exposure must be above zero.' }
   if (value > exposureMax) return { reason: 'Exposure: is too large to be meant.' }
-  return { value }
+  return { value, text: withUnit(cell, read.unitText, unit) }
 }
 
 function readLength(cell: string, what: string, unitOfColumn: FilmImportMapping['depth']['unit'], mapping: FilmImportMapping): Read<number | null> {
@@ -59,7 +62,7 @@ function readLength(cell: string, what: string, unitOfColumn: FilmImportMapping[
   if (unit === null) return { reason: `${what}: the cell says “${shortened(read.unitText, 40)}”, the column is in ${unitLabels[unitOfColumn]}.` }
   const value = micrometresOf(read, unit)
   if (Math.abs(value) > depthMicrometresMax) return { reason: `${what}: is more than 100 mm, too much to be meant.` }
-  return { value }
+  return { value, text: withUnit(cell, read.unitText, unit) }
 }
 
 function readState(cell: string, depthCell: string): Read<FilmReadingState | null> {
@@ -80,6 +83,8 @@ function readReplicate(cell: string | null): Read<string | null> {
   }
   return { value: text }
 }
+
+const textOf = (read: Read<unknown>, cell: string) => ('value' in read ? (read.text ?? cell) : cell)
 
 /** Binary rounding of the subtraction ends below a picometre. */
 const withoutSubstrate = (depth: number, substrate: number) => (substrate === 0 ? depth : Math.round((depth - substrate) * 1e6) / 1e6)
@@ -110,12 +115,15 @@ export function readFilmRow(cells: readonly string[], line: number, mapping: Fil
   if (cells.some(cell => cell.includes('\0'))) reasons.push('The row holds a zero byte, which no text file should.')
   if (reasons.length > 0) return { kind: 'rejected', line, cells: [...cells], reasons }
 
-  const exposureText = (cellOf(mapping.exposure) ?? '').trim()
-  const depthText = (cellOf(mapping.depth) ?? '').trim()
-  const exposure = take(readExposure(exposureText, mapping))
-  const namedState = take(readState(cellOf(mapping.state) ?? '', depthText))
-  const depthIsWord = stateOf(depthText) !== null
-  const typedDepth = depthIsWord ? null : take(readLength(depthText, 'Thickness', mapping.depth.unit, mapping))
+  const exposureCell = (cellOf(mapping.exposure) ?? '').trim()
+  const depthCell = (cellOf(mapping.depth) ?? '').trim()
+  const exposureRead = readExposure(exposureCell, mapping)
+  const exposure = take(exposureRead)
+  const namedState = take(readState(cellOf(mapping.state) ?? '', depthCell))
+  const depthRead = stateOf(depthCell) !== null ? { value: null } : readLength(depthCell, 'Thickness', mapping.depth.unit, mapping)
+  const typedDepth = take(depthRead)
+  const exposureText = textOf(exposureRead, exposureCell)
+  const depthText = textOf(depthRead, depthCell)
   const uncertaintyCell = cellOf(mapping.uncertainty)
   const uncertainty = uncertaintyCell === null || mapping.uncertainty === null ? null : take(readLength(uncertaintyCell, 'Uncertainty', mapping.uncertainty.unit, mapping))
   const replicateText = take(readReplicate(cellOf(mapping.replicate)))

@@ -49,7 +49,7 @@ describe('importing a file', () => {
     expect(batch).toMatchObject({ fileName: 'films.csv', acceptedRows: 3, rejectedRows: 0, importedBy: 'Tea Technician', withdrawnAt: null })
     expect({ rejected, alreadyImported, readingsRevision }).toEqual({ rejected: [], alreadyImported: false, readingsRevision: 2 })
     expect(await places()).toEqual(['1.7/4=400', '1.7/5=430', '1.7/6=440', '2.1/1=510'])
-    expect((await list()).items[1]).toMatchObject({ exposureText: '1.7', depthText: '0.43', importBatchId: batch.id, enteredBy: 'Tea Technician', version: 1 })
+    expect((await list()).items[1]).toMatchObject({ exposureText: '1.7 s', depthText: '0.43 mm', importBatchId: batch.id, enteredBy: 'Tea Technician', version: 1 })
   })
 
   it('orders the films of an exposure by their film number where a column has it', async () => {
@@ -74,7 +74,7 @@ describe('importing a file', () => {
       },
     })
     expect((await list()).items).toMatchObject([
-      { exposure: 1.7005, exposureText: '1.700,5', depthMicrometres: 30, depthText: '1030', standardUncertaintyMicrometres: 3.5, note: 'zwei\nZeilen; Semikolon', state: 'measured' },
+      { exposure: 1.7005, exposureText: '1.700,5 ms', depthMicrometres: 30, depthText: '1030 µm', standardUncertaintyMicrometres: 3.5, note: 'zwei\nZeilen; Semikolon', state: 'measured' },
       { exposure: 2.1, depthMicrometres: null, depthText: 'kein Film', state: 'no-film' },
       { exposure: 2.5, depthMicrometres: null, state: 'lost-in-wash', note: 'im Bad' },
     ])

@@ -12,7 +12,7 @@ const reasonsOf = (cells: readonly string[], mapping = full) => {
 describe('readFilmRow', () => {
   it('gives the reading in µm and s and keeps the texts', () => {
     expect(readFilmRow(Object.freeze(['1.7', ' 430 ', '', 'ok so far', '3', '2']), 7, full)).toEqual({
-      kind: 'reading', line: 7, exposure: 1.7, exposureText: '1.7', depthMicrometres: 430, depthText: '430', standardUncertaintyMicrometres: 3,
+      kind: 'reading', line: 7, exposure: 1.7, exposureText: '1.7 s', depthMicrometres: 430, depthText: '430 µm', standardUncertaintyMicrometres: 3,
       state: 'measured', exclusionReason: null, note: 'ok so far', replicateText: '2', remarks: [],
     })
   })
@@ -30,8 +30,13 @@ describe('readFilmRow', () => {
     expect(readFilmRow(['1.7', cell], 2, { ...plainMapping, depth: { column: 1, unit } })).toMatchObject({ depthMicrometres: value })
   })
 
+  it('adds the unit of the column to a bare number and leaves a unit that was written', () => {
+    expect(readFilmRow(['1700', '0.43 mm'], 2, { ...plainMapping, exposure: { column: 0, unit: 'ms' } })).toMatchObject({ exposureText: '1700 ms', depthText: '0.43 mm' })
+    expect(readFilmRow(['1.7', 'no film'], 2, plainMapping)).toMatchObject({ depthText: 'no film' })
+  })
+
   it('subtracts the substrate without binary crumbs', () => {
-    expect(readFilmRow(['1.7', '1.03'], 2, { ...plainMapping, depth: { column: 1, unit: 'mm' }, substrateThicknessMicrometres: 999.9 })).toMatchObject({ depthMicrometres: 30.1, depthText: '1.03' })
+    expect(readFilmRow(['1.7', '1.03'], 2, { ...plainMapping, depth: { column: 1, unit: 'mm' }, substrateThicknessMicrometres: 999.9 })).toMatchObject({ depthMicrometres: 30.1, depthText: '1.03 mm' })
   })
 
   it.each([
@@ -71,7 +76,7 @@ describe('readFilmRow', () => {
   })
 
   it('takes a thickness of 0 without a state as no film, and says so', () => {
-    expect(readFilmRow(['1.2', '0.00'], 2, full)).toMatchObject({ state: 'no-film', depthMicrometres: null, depthText: '0.00', note: 'Thickness 0 in the file, taken as no film.', remarks: ['A thickness of 0 is taken as “no film”.'] })
+    expect(readFilmRow(['1.2', '0.00'], 2, full)).toMatchObject({ state: 'no-film', depthMicrometres: null, depthText: '0.00 µm', note: 'Thickness 0 in the file, taken as no film.', remarks: ['A thickness of 0 is taken as “no film”.'] })
   })
 
   it('keeps a negative thickness and remarks on it', () => {
