@@ -82,7 +82,7 @@ export async function seedStudies(transaction: Transaction, context: SeedContext
   const batchId = newId()
   await transaction.insert(importBatch).values({
     id: batchId, shopId, studyId: ids.southGrey, fileName: 'south-bench-films.csv', mapping: southMapping, acceptedRows: 12, rejectedRows: 1,
-    rejected: [{ line: 9, cells: ['3,9', 'torn'], reasons: ['Thickness: the cell is “torn”, which is not a number.'] }], header: ['time (s)', 'thickness (mm)'],
+    rejected: [{ line: 8, cells: ['3,9', 'torn'], reasons: ['Thickness: the cell is “torn”, which is not a number.'] }], header: ['time (s)', 'thickness (mm)'],
     importedByUserId: userIds.engineer, importedAt: daysFrom(now, -14),
   })
 

@@ -1,14 +1,16 @@
+import { readFileSync } from 'node:fs'
 import { v7 } from 'uuid'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { eq } from 'drizzle-orm'
 import { demoPeople, seedDemoShop } from '#db/seed/index.ts'
-import { filmReading, lot, membership, pairing, printer, resin, shop, study, user } from '#db/schema/index.ts'
+import { filmReading, importBatch, lot, membership, pairing, printer, resin, shop, study, user } from '#db/schema/index.ts'
 import { lotSchema } from '#shared/contracts/resins.ts'
 import { emailSchema, newPasswordSchema, roles } from '#shared/contracts/common.ts'
 import { newPrinterSchema } from '#shared/contracts/printers.ts'
 import { filmReadingSaveSchema } from '#shared/contracts/film.ts'
 import { filmSettingsSchema } from '#shared/contracts/studies.ts'
 import { fitWorkingCurve } from '#shared/film/index.ts'
+import { guessFilmImportMapping, readFilmRow } from '#shared/imports/index.ts'
 import { createTestDatabase, type TestDatabase } from '#tests/helpers/test-database.ts'
 
 const now = new Date('2026-03-10T09:00:00Z')
@@ -90,6 +92,19 @@ describe('the demo shop', () => {
       planned.splice(planned.indexOf(film.exposure), 1)
     }
     expect(planned).toHaveLength(3)
+  })
+
+  it('has the films of fixtures/data/south-bench-films.csv, as its import would have read them', async () => {
+    const rows = readFileSync(new URL('../../fixtures/data/south-bench-films.csv', import.meta.url), 'utf8').trim().split('\r\n').map(line => line.split(';'))
+    const { mapping } = guessFilmImportMapping({ rows, encoding: 'utf-8', delimiter: ';' }, 'seconds')
+    if (mapping === null) throw new Error('no mapping was guessed')
+    const outcomes = rows.slice(1).map((cells, i) => readFilmRow(cells, i + 2, mapping))
+    const read = outcomes.flatMap(outcome => (outcome.kind === 'reading' ? [[outcome.exposure, outcome.exposureText, outcome.depthMicrometres, outcome.depthText]] : []))
+    const stored = (await filmsOf('Everyday grey on the south bench')).toSorted((a, b) => a.exposure - b.exposure || a.replicate - b.replicate)
+    expect(stored.map(film => [film.exposure, film.exposureText, film.depthMicrometres, film.depthText])).toEqual(read)
+    const [batch] = await test.database.select().from(importBatch)
+    expect(batch).toMatchObject({ mapping, acceptedRows: read.length, rejectedRows: 1 })
+    expect(batch?.rejected).toMatchObject(outcomes.flatMap(outcome => (outcome.kind === 'rejected' ? [{ line: outcome.line, cells: outcome.cells, reasons: outcome.reasons }] : [])))
   })
 
   it('has one resin on two printers', async () => {
