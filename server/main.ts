@@ -3,7 +3,7 @@ import { pino } from 'pino'
 import { v7 } from 'uuid'
 import { connectDatabase } from '#db/client.ts'
 import { migrateDatabase } from '#db/migrate.ts'
-import { demoPeople, seedDemoShop } from '#db/seed/index.ts'
+import { seedDemoShop } from '#db/seed/index.ts'
 import { createApp } from './app.ts'
 import { readConfig } from './config.ts'
 import { startMailQueue } from './jobs/mail-queue.ts'
@@ -30,8 +30,7 @@ async function migrateWhenReachable(): Promise<void> {
 
 await migrateWhenReachable()
 const connection = connectDatabase({ url: config.databaseUrl, connectionsMax: config.databaseConnectionsMax })
-if (config.demoShop) await seedDemoShop({ database: connection.database, now: clock(), newId: v7, hashPassword })
-const demoSignIns = config.demoShop ? demoPeople : []
+const demoSignIns = config.demoShop ? await seedDemoShop(connection.database, { newId: v7, clock, hashPassword }) : []
 const mailbox = config.smtpUrl === null ? await startFakeMailServer(clock) : null
 const mailQueue = await startMailQueue({
   databaseUrl: config.databaseUrl,
