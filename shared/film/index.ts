@@ -37,3 +37,8 @@ export { compareFilmModels, type ComparedModel, type FilmModelComparison, type F
 export type {
   DeadTimeFit, FilmModelFit, FilmModelRefusal, ModelDepth, ModelExposure, ModelExposureOutcome, ModelPoint, QuadraticFit, TwoLineFit,
 } from './film-model-types.ts'
+
+// Films that are far off, uncertain in exposure, or missing
+export { fitRobustWorkingCurve, type RobustWorkingCurve, type RobustWorkingCurveOutcome } from './fit-robust-working-curve.ts'
+export { fitWorkingCurveYork, type YorkWorkingCurve, type YorkWorkingCurveOptions, type YorkWorkingCurveOutcome } from './fit-working-curve-york.ts'
+export { censoredExposureForDepth, fitCensoredWorkingCurve, type CensoredWorkingCurve, type CensoredWorkingCurveOutcome } from './fit-censored-working-curve.ts'

@@ -20,3 +20,8 @@ export { moverSum, negate, type Ranged } from './mover.ts'
 // Nonlinear curves
 export { fitNonlinear, type NonlinearOptions } from './fit-nonlinear.ts'
 export type { NonlinearFit, NonlinearJacobian, NonlinearModel, NonlinearOutcome, NonlinearRefusal } from './nonlinear-types.ts'
+
+// Other lines
+export { fitRobustLine, type RobustLine, type RobustOutcome } from './fit-robust-line.ts'
+export { fitYork, type YorkLine, type YorkOutcome } from './fit-york.ts'
+export { fitTobit, type TobitFit, type TobitOutcome } from './fit-tobit.ts'
