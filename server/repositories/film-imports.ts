@@ -186,17 +186,15 @@ export async function restoreBatch(transaction: Executor, key: StudyKey, change:
         where o.study_id = r.study_id and o.withdrawn_at is null and o.exposure = r.exposure and o.replicate = r.replicate
       ) or row_number() over (partition by r.exposure, r.replicate order by r.id) > 1 as taken
       from (select * from film_reading where ${ofThisWithdrawal}) r
-    ), last_column as (
-      select exposure, max(replicate) as replicate from (
-        select exposure, replicate from film_reading
-        where shop_id = ${key.shopId} and study_id = ${key.studyId} and withdrawn_at is null
-        union all select exposure, replicate from coming where not taken
-      ) filled group by exposure
     ), placed as (
-      select coming.id, case when taken
-        then last_column.replicate + (row_number() over (partition by coming.exposure, taken order by coming.replicate, coming.id))::int
-        else coming.replicate end as replicate
-      from coming left join last_column using (exposure)
+      -- Looked up cell by cell rather than joined: there are no statistics yet for what was just imported.
+      select id, case when taken
+        then greatest(
+          max(replicate) over (partition by exposure),
+          (select max(replicate) from film_reading o where o.study_id = ${key.studyId} and o.withdrawn_at is null and o.exposure = coming.exposure)
+        ) + (row_number() over (partition by exposure, taken order by replicate, id))::int
+        else replicate end as replicate
+      from coming
     )
     update film_reading r set replicate = placed.replicate, withdrawn_at = null, updated_at = now(), version = r.version + 1
     from placed where r.id = placed.id`)

@@ -1,5 +1,6 @@
 import type { Router } from 'express'
 import type { Dependencies } from '../dependencies.ts'
+import { benchRoutes } from './bench.ts'
 import { Binder } from './binder.ts'
 import { developmentRoutes } from './development.ts'
 import { filmImportRoutes } from './film-imports.ts'
@@ -7,6 +8,7 @@ import { filmRoutes } from './film.ts'
 import { memberRoutes } from './members.ts'
 import { openApiRoute } from './openapi.ts'
 import { sessionRoutes } from './session.ts'
+import { thingRoutes } from './things.ts'
 
 /** Every feature's routes. The order does not matter: paths are disjoint. */
 export function bindRoutes(router: Router, dependencies: Dependencies): Binder {
@@ -14,6 +16,8 @@ export function bindRoutes(router: Router, dependencies: Dependencies): Binder {
   sessionRoutes(binder)
   memberRoutes(binder)
   developmentRoutes(binder)
+  thingRoutes(binder)
+  benchRoutes(binder)
   filmRoutes(binder)
   filmImportRoutes(binder)
   openApiRoute(router)

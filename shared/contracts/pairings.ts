@@ -12,6 +12,7 @@ export const pairingSchema = lifecycleSchema.extend({
   studyCount: z.int(),
 })
 export type Pairing = z.infer<typeof pairingSchema>
+export type NewPairing = z.infer<typeof newPairingSchema>
 
 const params = shopParamsSchema.extend({ pairingId: idSchema })
 const path = '/api/shops/:shopId/pairings'
