@@ -22,15 +22,21 @@ describe('the working-curve equation (Jacobs 1992), Dp 100 µm and Ec 10 mJ/cm²
   })
 })
 
-describe('eight films with fixed scatter (NumPy/SciPy from the equations; standard error of Dp: R 4.2.2, lm)', () => {
-  const fit = curve([15, 20, 30, 40, 60, 80, 100, 120], [42.55, 66.31, 110.86, 142.63, 177.18, 206.94, 233.26, 244.49])
+describe('eight films with fixed scatter (computed independently with NumPy/SciPy from the equations)', () => {
+  const scatter = [2, -3, 1, 4, -2, -1, 3, -4]
+  const exposures = [15, 20, 30, 40, 60, 80, 100, 120]
+  const fit = curve(exposures, exposures.map((exposure, i) => 100 * Math.log(exposure / 10) + (scatter[i] ?? 0)))
   it('gives Dp, Ec, scatter and the exposure for 75 µm with their standard errors', () => {
     expect(fit.penetrationDepthMicrometres.value).toBeCloseTo(99.18, 2)
-    expect(fit.penetrationDepthMicrometres.standardError).toBeCloseTo(1.53583973804, 9)
+    expect(fit.penetrationDepthMicrometres.standardError).toBeCloseTo(1.535, 3)
     expect(fit.criticalExposure.value).toBeCloseTo(9.874, 3)
     expect(fit.criticalExposure.standardError / fit.criticalExposure.value).toBeCloseTo(0.0263, 4)
     expect(fit.residualStandardDeviation).toBeCloseTo(3.09, 3)
     expect(exposureForDepth(fit, 75).value).toBeCloseTo(21.03, 2)
+  })
+  it('gives the standard error of R 4.2.2 (lm) for the same depths rounded to 0.01 µm', () => {
+    const rounded = curve(exposures, [42.55, 66.31, 110.86, 142.63, 177.18, 206.94, 233.26, 244.49])
+    expect(rounded.penetrationDepthMicrometres.standardError).toBeCloseTo(1.53583973804, 9)
   })
   it('knows how strongly ln Ec and Dp hang together', () => {
     const [[interceptVariance, both], [, slopeVariance]] = fit.covariance
