@@ -19,11 +19,12 @@ export interface LockedStudy {
 
 const ofStudy = (key: StudyKey) => and(eq(filmReading.shopId, key.shopId), eq(filmReading.studyId, key.studyId))
 /**
- * The same check for rows that are found by their ids: written so that no index serves it. Just after a large import
- * PostgreSQL believes that a study has hardly any rows and would walk all of them for every id.
+ * The same check for rows that are found by their ids. Written as a case, so that PostgreSQL neither looks for an index nor
+ * guesses how many rows pass: just after a large import it believes that a study has hardly any, and would walk all of
+ * them for every id (50 s instead of 0.2 s for 2000 cells beside 100,000 imported ones).
  */
 const checkedStudy = (key: StudyKey) =>
-  sql`film_reading.shop_id is not distinct from ${key.shopId}::uuid and film_reading.study_id is not distinct from ${key.studyId}::uuid`
+  sql`case when film_reading.shop_id = ${key.shopId}::uuid and film_reading.study_id = ${key.studyId}::uuid then true else false end`
 const withIds = (ids: readonly string[]) => sql`film_reading.id = any(${sql.param(ids)}::uuid[])`
 const live = isNull(filmReading.withdrawnAt)
 
