@@ -117,9 +117,10 @@ function assemble(parts: {
     const leverage = line.leverages[i] ?? 0
     const weight = weights[i] ?? 1
     const free = 1 - leverage
-    // With the film left out, the residual variance has one degree of freedom less.
+    // With the film left out, the residual variance has one degree of freedom less. Where nothing is left but rounding, the
+    // floor keeps the residual a (huge) number.
     const varianceWithout = degreesOfFreedom > 1 && free > 1e-12
-      ? (residualSumOfSquares - (weight * residual * residual) / free) / (degreesOfFreedom - 1)
+      ? Math.max(1e-11 * residualSumOfSquares, residualSumOfSquares - (weight * residual * residual) / free) / (degreesOfFreedom - 1)
       : 0
     return {
       exposure: film.exposure,

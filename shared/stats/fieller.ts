@@ -23,7 +23,9 @@ export function fieller(ratio: {
   const a = denominator ** 2 - square * ratio.denominatorVariance
   const halfB = numerator * denominator - square * ratio.covariance
   const c = numerator ** 2 - square * ratio.numeratorVariance
-  const discriminant = halfB ** 2 - a * c
+  const difference = halfB ** 2 - a * c
+  // With a clear denominator there are always two roots: less than zero is rounding, where the variances are next to nothing.
+  const discriminant = a > 0 ? Math.max(0, difference) : difference
   if (!Number.isFinite(discriminant) || discriminant < 0 || a === 0) return { kind: 'unbounded' }
   // The root of larger size first, the other from the product of both: no digits are lost by cancellation.
   const far = halfB + (halfB >= 0 ? 1 : -1) * Math.sqrt(discriminant)
