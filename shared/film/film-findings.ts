@@ -90,7 +90,7 @@ function designFindings(fit: WorkingCurveFit): Finding[] {
   if (fit.weighting === 'proportional') {
     findings.push({
       code: 'weighting-proportional', severity: 'caution',
-      sentence: 'Films are weighted as if the gauge erred by a percentage. If it errs by so many micrometres instead, the intervals are too short: 95 % become about 75 %.',
+      sentence: 'Films are weighted as if the gauge erred by a percentage. If it errs by so many micrometres instead, the intervals are too short: 95 % become 60 to 80 %.',
       numbers: {},
       formula: 'weight = 1 / depth²',
       source: 'our simulation (npm run simulate)',

@@ -174,7 +174,7 @@ function checksOf(
   fit: WorkingCurveFit,
   data: { x: readonly number[]; y: readonly number[]; weights: readonly number[]; residualSumOfSquares: number },
 ): WorkingCurveFit['checks'] {
-  return { curvature: curvatureOf(fit), lackOfFit: lackOfFit({ ...data, parameters: 2 }) }
+  return { curvature: curvatureOf(fit), lackOfFit: fit.filmCount === fit.levelCount ? null : lackOfFit({ ...data, parameters: 2 }) }
 }
 
 // Spreading 100,000 values into Math.min overflows the stack.

@@ -10,6 +10,8 @@ import { StatsError } from './types.ts'
 /** A fit asks for the same quantile many times; keyed by probability and degrees of freedom. */
 const kept = new Map<string, number>()
 
+let lastT = { probability: 0, degreesOfFreedom: 0, value: 0 }
+
 function once(key: string, compute: () => number): number {
   let value = kept.get(key)
   if (value === undefined) {
@@ -54,9 +56,13 @@ export function normalQuantile(probability: number): number {
  * tQuantile(0.975, 4) // => 2.7764451051977987
  */
 export function tQuantile(probability: number, degreesOfFreedom: number): number {
+  // One fit asks for one and the same value a dozen times: faster than to make a key each time.
+  if (probability === lastT.probability && degreesOfFreedom === lastT.degreesOfFreedom) return lastT.value
   checkProbability(probability)
   checkDegrees(degreesOfFreedom)
-  return once(`t${probability}|${degreesOfFreedom}`, () => tQuantileOf(probability, degreesOfFreedom))
+  const value = once(`t${probability}|${degreesOfFreedom}`, () => tQuantileOf(probability, degreesOfFreedom))
+  lastT = { probability, degreesOfFreedom, value }
+  return value
 }
 
 /** Quantile of the chi-square distribution. */

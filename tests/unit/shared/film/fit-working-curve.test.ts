@@ -200,6 +200,7 @@ describe('too little to tell', () => {
     ['slope-not-positive', measured([1, 2, 4], [90, 70, 40])],
     ['slope-not-positive', measured([1, 2, 4], [80, 80, 80])],
     ['slope-not-positive', measured([1, 2], [80, 80 + 1e-12])],
+    ['slope-not-positive', measured([1, 2], [80, 80.05])],
   ] as const)('refuses %s', (reason, few) => {
     const outcome = fitWorkingCurve({ readings: few, exposureKind: 'seconds' })
     expect(outcome).toMatchObject({ kind: 'refused', reason })
@@ -241,6 +242,13 @@ describe('too little to tell', () => {
     expect(noisy.criticalExposure.interval.kind).not.toBe('finite')
     expect(exposureForDepth(noisy, 80).meanInterval.kind).not.toBe('finite')
     expect(noisy.findings[0]).toMatchObject({ code: 'slope-not-established', severity: 'serious' })
+  })
+
+  it('still fits films whose critical exposure is a number, however small', () => {
+    expect(
+      fittedOnly(fitWorkingCurve({ readings: measured([1, 2], [80, 80.1]), exposureKind: 'seconds' }))
+        .criticalExposure.value,
+    ).toBeGreaterThan(0)
   })
 
   it('keeps every number finite for films that hardly differ', () => {
