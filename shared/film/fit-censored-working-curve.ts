@@ -1,6 +1,6 @@
 import { fitTobit, type TobitFit } from '../stats/fit-tobit.ts'
-import { profileInterval } from '../stats/profile-interval.ts'
 import { tQuantile } from '../stats/quantiles.ts'
+import { smoothProfileEnds } from '../stats/smooth-profile-ends.ts'
 import { StatsError, type Estimate, type Interval, type Refused } from '../stats/types.ts'
 import { collectCensoredFilms, type CensoredFilms } from './censored-films.ts'
 import { exponentiate } from './exponentiate.ts'
@@ -126,7 +126,7 @@ function logLikelihoodOf(fit: Profiled, column: (x: number) => number, offset: (
 
 function slopeInterval(fit: Profiled, standardError: number): Interval {
   const slope = fit.coefficients[1]
-  const ends = profileInterval(held => logLikelihoodOf(fit, () => 1, x => held * (x - fit.meanLogExposure)), {
+  const ends = smoothProfileEnds(held => logLikelihoodOf(fit, () => 1, x => held * (x - fit.meanLogExposure)), {
     best: slope, maximum: fit.logLikelihood, drop: allowedDrop(fit), step: standardError, reach: 1000 * (slope + standardError),
   })
   return ends.lower === null || ends.upper === null ? { kind: 'unbounded' } : { kind: 'finite', lower: ends.lower, upper: ends.upper }
@@ -135,7 +135,7 @@ function slopeInterval(fit: Profiled, standardError: number): Interval {
 /** Lines through (x, depth): what the films say about the exposure x of that depth. */
 function exposureInterval(fit: Profiled, depth: number, firstStep: number): Interval {
   const [height, slope] = fit.coefficients
-  const ends = profileInterval(held => logLikelihoodOf(fit, x => x - held, () => depth), {
+  const ends = smoothProfileEnds(held => logLikelihoodOf(fit, x => x - held, () => depth), {
     best: fit.meanLogExposure + (depth - height) / slope,
     maximum: fit.logLikelihood,
     drop: allowedDrop(fit),

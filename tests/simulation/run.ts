@@ -4,6 +4,7 @@
  */
 import { parseArgs } from 'node:util'
 import { seededRandom, type RandomSource } from '#shared/stats/index.ts'
+import { reportFilmCurves } from './film-curves-coverage.ts'
 import { reportFilm } from './film-report.ts'
 
 type Report = (options: { sets: number; random: RandomSource; print: (text: string) => void }) => void
@@ -11,6 +12,7 @@ type Report = (options: { sets: number; random: RandomSource; print: (text: stri
 /** One line per part of the product; each part brings its own report. */
 const sections: Readonly<Record<string, Report>> = {
   film: reportFilm,
+  'film-curves': reportFilmCurves,
 }
 
 const { values, positionals } = parseArgs({
