@@ -3,6 +3,7 @@ import type { Dependencies } from '../dependencies.ts'
 import { benchRoutes } from './bench.ts'
 import { Binder } from './binder.ts'
 import { developmentRoutes } from './development.ts'
+import { filmExportRoutes } from './film-exports.ts'
 import { filmImportRoutes } from './film-imports.ts'
 import { filmRoutes } from './film.ts'
 import { memberRoutes } from './members.ts'
@@ -20,6 +21,7 @@ export function bindRoutes(router: Router, dependencies: Dependencies): Binder {
   benchRoutes(binder)
   filmRoutes(binder)
   filmImportRoutes(binder)
+  filmExportRoutes(binder)
   openApiRoute(router)
   return binder
 }
