@@ -199,6 +199,29 @@ describe('exposureFromProven', () => {
     expect(answer.rule).toMatchObject({ kind: 'constant-ratio', ratio: expect.closeTo(2 * Math.log(3), 10) })
   })
 
+  it('takes the critical time from the films too: at tc = 0.5 s the same exposure cures deeper', () => {
+    const exposures = [1.2, 2, 4, 8, 12]
+    const readings = measured(
+      exposures,
+      exposures.map(t => 100 * Math.log(t / 0.5)),
+    )
+    const half = fittedOnly(fitWorkingCurve({ readings, exposureKind: 'seconds' }))
+    const answer = exposureFromProven({
+      provenSeconds: 3,
+      provenLayerHeightMicrometres: 50,
+      layerHeightMicrometres: 75,
+      fit: half,
+      rule: 'constant-ratio',
+    })
+    expect(answer.value).toBeCloseTo(3 * Math.sqrt(6), 10)
+    // Half a step of 0.05 s counts 1.5 times on ln t1; the films are exact.
+    expect(answer.interval).toMatchObject({
+      kind: 'finite',
+      lower: expect.closeTo(2.95 ** 1.5 / Math.sqrt(0.5), 9),
+      upper: expect.closeTo(3.05 ** 1.5 / Math.sqrt(0.5), 9),
+    })
+  })
+
   it('gives the proven exposure back for the same height, within half a step', () => {
     for (const rule of ['constant-overcure', 'constant-ratio', 'far-side-dose'] as const) {
       const answer = scale(50, rule)

@@ -113,13 +113,14 @@ describe('findings', () => {
     },
   )
 
-  it('does not accuse one of four films', () => {
-    expect(
-      finding(
-        line([1.5, 3, 6, 12], (_, i) => (i === 1 ? 60 : 0)),
-        'outlier',
-      ),
-    ).toBeUndefined()
+  it('accuses one of five films, never one of four', () => {
+    const nearly = (exposures: readonly number[]) =>
+      measured(
+        exposures,
+        exposures.map((t, i) => 100 * Math.log(t) + (i === 1 ? 60 : (scatter[i] ?? 0) / 1000)),
+      )
+    expect(finding(nearly([1.5, 3, 6, 12]), 'outlier')).toBeUndefined()
+    expect(finding(nearly([1.5, 3, 6, 9, 12]), 'outlier')).toMatchObject({ readingIndexes: [1] })
   })
 
   it('names the one film that decides the line', () => {
