@@ -1,0 +1,137 @@
+import { useQueryClient } from '@tanstack/vue-query'
+import { computed, reactive, ref, shallowRef, toRaw, watch } from 'vue'
+import type { z } from 'zod'
+import { ApiError } from '@/api/call.ts'
+
+/** One field of a form, as people see it. */
+export interface FieldSpec {
+  readonly name: string
+  readonly label: string
+  readonly kind: 'text' | 'number' | 'date' | 'notes' | 'select'
+  readonly unit?: string
+  readonly hint?: string
+  readonly required?: boolean
+  readonly options?: readonly { readonly value: string; readonly label: string }[]
+  /** An empty field means "not known". */
+  readonly nullable?: boolean
+}
+
+interface Versioned {
+  readonly id: string
+  readonly version: number
+}
+
+interface Options<T extends Versioned> {
+  /** Where unsaved input is kept in this tab, so that a reload or a lost session costs nothing. */
+  readonly draftKey: string
+  readonly fields: readonly FieldSpec[]
+  readonly initial: Readonly<Record<string, unknown>>
+  readonly schema: z.ZodType
+  readonly create: (values: Record<string, unknown>, idempotencyKey: string) => Promise<T>
+  readonly update: (values: Record<string, unknown>, baseVersion: number) => Promise<T>
+}
+
+/** Input, checks, saving and the meeting of two edits, for every thing that people keep. */
+export function useThingForm<T extends Versioned>(options: Options<T>) {
+  const queries = useQueryClient()
+  const thing = shallowRef<T | null>(null)
+  const values = reactive<Record<string, unknown>>({ ...options.initial })
+  const busy = ref(false)
+  const error = shallowRef<unknown>(null)
+  const problems = ref<Record<string, string>>({})
+  const stale = shallowRef<T | null>(null)
+  const touched = ref(false)
+  let idempotencyKey = crypto.randomUUID()
+
+  const clean = (): Record<string, unknown> =>
+    Object.fromEntries(options.fields.map(field => {
+      const value = toRaw(values)[field.name]
+      if (field.nullable === true && (value === '' || value === undefined)) return [field.name, null]
+      return [field.name, value]
+    }))
+
+  function readDraft(): void {
+    try {
+      const kept: unknown = JSON.parse(sessionStorage.getItem(options.draftKey) ?? 'null')
+      if (typeof kept === 'object' && kept !== null) {
+        Object.assign(values, kept)
+        touched.value = true
+      }
+    } catch {
+      sessionStorage.removeItem(options.draftKey)
+    }
+  }
+
+  function forgetDraft(): void {
+    sessionStorage.removeItem(options.draftKey)
+    touched.value = false
+  }
+
+  /** Shows a thing as it is stored; what was typed and not saved yet stays in front. */
+  function show(next: T): void {
+    thing.value = next
+    for (const field of options.fields) values[field.name] = shown((next as Record<string, unknown>)[field.name], field)
+    readDraft()
+  }
+
+  const shown = (value: unknown, field: FieldSpec): unknown => (value === null && field.kind !== 'number' ? '' : value)
+
+  function changed(): void {
+    touched.value = true
+    // Another content is another create: the old key would answer with the old thing.
+    idempotencyKey = crypto.randomUUID()
+    sessionStorage.setItem(options.draftKey, JSON.stringify(toRaw(values)))
+  }
+
+  watch(values, () => {
+    if (Object.keys(problems.value).length > 0) check()
+  })
+
+  function check(): boolean {
+    const parsed = options.schema.safeParse(clean())
+    problems.value = parsed.success ? {} : Object.fromEntries(parsed.error.issues.map(issue => [String(issue.path[0] ?? ''), friendly(issue.message)]))
+    return parsed.success
+  }
+
+  const friendly = (message: string): string => (/received (null|undefined|NaN)/.test(message) || message.startsWith('Invalid input') ? 'Fill this in.' : message)
+
+  async function save(baseVersion?: number): Promise<T | null> {
+    if (busy.value || !check()) return null
+    busy.value = true
+    error.value = null
+    try {
+      const saved = thing.value === null ? await options.create(clean(), idempotencyKey) : await options.update(clean(), baseVersion ?? thing.value.version)
+      forgetDraft()
+      stale.value = null
+      show(saved)
+      await queries.invalidateQueries()
+      return saved
+    } catch (failure) {
+      if (failure instanceof ApiError && failure.problem.code === 'stale-edit') stale.value = failure.problem.current as T
+      else error.value = failure
+      return null
+    } finally {
+      busy.value = false
+    }
+  }
+
+  /** Saves over the other version, knowingly. */
+  const keepMine = (): Promise<T | null> => save(stale.value?.version)
+
+  function takeCurrent(): void {
+    const current = stale.value
+    if (current === null) return
+    forgetDraft()
+    stale.value = null
+    show(current)
+  }
+
+  const errorOf = (name: string): string | undefined => {
+    if (problems.value[name] !== undefined) return problems.value[name]
+    if (!(error.value instanceof ApiError)) return undefined
+    return error.value.problem.fields?.find(problem => problem.path === `body.${name}`)?.sentence
+  }
+
+  if (Object.keys(options.initial).length > 0) readDraft()
+  return { thing, values, busy, error, stale, touched: computed(() => touched.value), show, changed, save, keepMine, takeCurrent, errorOf, forgetDraft }
+}
