@@ -154,10 +154,32 @@ describe('compareWorkingCurves', () => {
     expect(pooled({ depthMicrometres: 120, sameWavelength: true }, curve(1.3, 140, 3))).toMatchObject({
       reason: 'slopes-not-shown-equal',
     })
+    expect(pooled({ depthMicrometres: 120, sameWavelength: true }, curve(1.3, 70, 1))).toMatchObject({
+      reason: 'slopes-not-shown-equal',
+    })
     // Not rejecting is not showing: wide scatter, equal slopes.
     expect(pooled({ depthMicrometres: 120, sameWavelength: true }, curve(1.3, 100, 40))).toMatchObject({
       reason: 'slopes-not-shown-equal',
     })
+  })
+
+  it('needs less exposure, in both ratios, where the second printer cures 10 µm deeper: exp(-10/Dp)', () => {
+    const first = curve(1, 100, 3)
+    const deeper = fittedOnly(
+      fitWorkingCurve({
+        readings: measured(
+          exposures,
+          first.points.map(point => point.depthMicrometres + 10),
+        ),
+        exposureKind: 'seconds',
+      }),
+    )
+    const answer = compareWorkingCurves([first, deeper], { depthMicrometres: 120, sameWavelength: true })
+    if (answer.kind !== 'compared' || answer.pooled.kind !== 'offered')
+      throw new Error('expected both ratios')
+    const ratio = Math.exp(-10 / first.penetrationDepthMicrometres.value)
+    expect(answer.potencyRatio.value).toBeCloseTo(ratio, 9)
+    expect(answer.pooled.value).toBeCloseTo(ratio, 9)
   })
 
   it('changes with depth where the slopes differ, as the lines do', () => {
