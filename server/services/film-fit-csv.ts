@@ -25,6 +25,9 @@ const estimateRow = (quantity: string, unit: string, estimate: Estimate): readon
 
 const numberRow = (quantity: string, unit: string, value: number): readonly CsvValue[] => [quantity, unit, value, null, null, null, null, null]
 
+const modelRemark = (model: Study['film']['model']) =>
+  model === 'straight-line' ? model : `straight-line (the study uses ${model}, whose answers are not in this file)`
+
 function layerRows(study: Study, fit: WorkingCurveFit, exposureUnit: string): readonly (readonly CsvValue[])[] {
   const { byRule } = compareLayerRules(fit, { layerHeightMicrometres: study.layerHeightMicrometres, rules: layerRulesOf(study.film) })
   return byRule.flatMap(answer => {
@@ -58,6 +61,7 @@ export function fitCsv(study: Study, fit: { readonly outcome: WorkingCurveOutcom
   const [[interceptVariance, covariance], [, slopeVariance]] = outcome.covariance
   return toCsv([
     header,
+    ['model', '', null, null, null, null, null, modelRemark(study.film.model)],
     estimateRow('penetration_depth', 'micrometres', outcome.penetrationDepthMicrometres),
     estimateRow('critical_exposure', exposureUnit, outcome.criticalExposure),
     estimateRow('intercept', 'micrometres', outcome.interceptMicrometres),

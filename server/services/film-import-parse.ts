@@ -2,7 +2,7 @@ import Papa from 'papaparse'
 import type { FilmImportMapping, RejectedRow } from '#shared/contracts/film-imports.ts'
 import { importBytesMax, importRowsMax } from '#shared/contracts/film-imports.ts'
 import {
-  cellCharactersMax, createFilmRowReader, createRowSplitter, csvTokeniserOptions, detectEncoding, shortened, tokeniserOf,
+  cellCharactersMax, createFilmRowReader, createRowSplitter, csvTokeniserOptions, detectEncoding, headerOf, shortened, tokeniserOf,
   type ImportedReading, type SplitterOutcome,
 } from '#shared/imports/index.ts'
 import { AppError } from '../errors.ts'
@@ -18,7 +18,7 @@ export interface ParsedImport {
   readonly rejected: readonly RejectedRow[]
   /** All of them, also those not kept. */
   readonly rejectedRows: number
-  /** Cells of the last header row; empty where the file has none. */
+  /** Names of the columns, several header rows joined; empty where the file has none. */
   readonly header: readonly string[]
 }
 
@@ -101,7 +101,7 @@ export async function parseImport(body: AsyncIterable<Uint8Array>, mapping: Film
   const splitter = createRowSplitter(tokeniserOf(new Papa.Parser(csvTokeniserOptions(mapping.delimiter))))
   const readings: ImportedReading[] = []
   const rejected = new RejectedRows()
-  let header: readonly string[] = []
+  const headerRows: (readonly string[])[] = []
 
   const take = (outcome: SplitterOutcome) => {
     if (outcome.kind === 'endless-row') {
@@ -110,7 +110,7 @@ export async function parseImport(body: AsyncIterable<Uint8Array>, mapping: Film
     for (const { cells, quotes } of outcome.rows) {
       const row = reader.row(cells, quotes)
       if (row.kind === 'file-refused') throw refuseImport(row.sentence)
-      if (row.kind === 'header') header = row.cells
+      if (row.kind === 'header') headerRows.push(row.cells)
       if (row.kind === 'rejected') rejected.add(row)
       if (row.kind === 'reading') readings.push(row)
       if (readings.length + rejected.count > importRowsMax) {
@@ -122,7 +122,7 @@ export async function parseImport(body: AsyncIterable<Uint8Array>, mapping: Film
   take(splitter.end())
 
   if (readings.length + rejected.count === 0) {
-    throw refuseImport(header.length === 0 ? 'The file has no rows.' : 'The file has a header, but no rows below it.')
+    throw refuseImport(headerRows.length === 0 ? 'The file has no rows.' : 'The file has a header, but no rows below it.')
   }
-  return { readings, rejected: rejected.kept, rejectedRows: rejected.count, header: header.map(storable) }
+  return { readings, rejected: rejected.kept, rejectedRows: rejected.count, header: headerOf(headerRows, headerRows.length).map(storable) }
 }

@@ -62,7 +62,10 @@ export const importFilmReadings = operation({
     fileName: z.string().min(1).max(200),
     /** JSON of the mapping. */
     mapping: z.string().max(4000),
-    /** JSON array of the header's cells, under which the mapping is remembered. */
+    /**
+     * JSON array of the header's cells as the client saw them: the mapping is remembered under it too. The file's own
+     * header is remembered anyway, so leave it out where it would make the address long (over 8000 characters).
+     */
     header: z.string().max(20_000).optional(),
   }),
   response: z.object({ batch: importBatchSchema, rejected: z.array(rejectedRowSchema), alreadyImported: z.boolean(), readingsRevision: z.int() }),

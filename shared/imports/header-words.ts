@@ -17,9 +17,12 @@ const wholeHeaders: Readonly<Record<string, ColumnRole>> = { t: 'exposure', e: '
 /** "Depth uncertainty" is an uncertainty, "film thickness" a depth: the first role of this list that matches. */
 const precedence: readonly ColumnRole[] = ['uncertainty', 'note', 'state', 'depth', 'exposure', 'replicate']
 
+/** No header that a person wrote is longer; a lost quotation mark makes one of a whole file. */
+const headerCharactersMax = 200
+
 /** What a header cell says its column is, or null. @example roleOfHeader('Belichtungszeit [s]') // => 'exposure' */
 export function roleOfHeader(header: string): ColumnRole | null {
-  const plain = header.normalize('NFC').toLowerCase().replace(/[([].*$/, '').trim()
+  const plain = header.slice(0, headerCharactersMax).normalize('NFC').toLowerCase().replace(/[([].*$/, '').trim()
   const whole = wholeHeaders[plain]
   if (whole !== undefined) return whole
   const words = plain.split(/[^\p{L}\d]+/u).filter(word => word !== '')
@@ -34,7 +37,8 @@ export function roleOfHeader(header: string): ColumnRole | null {
 }
 
 /** The pieces of a header that may be a unit: what stands in brackets, after "in" or a comma, or at its end. */
-function unitCandidates(header: string): readonly string[] {
+function unitCandidates(whole: string): readonly string[] {
+  const header = whole.slice(0, headerCharactersMax)
   const bracketed = [...header.matchAll(/[([]([^)\]]*)[)\]]/g)].map(match => match[1] ?? '')
   const words = header.split(/[\s_,]+/).filter(word => word !== '')
   const tails = [1, 2, 3, 4].filter(n => n < words.length).map(n => words.slice(-n).join(' '))

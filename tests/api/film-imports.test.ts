@@ -281,6 +281,11 @@ describe('the mapping of a header', () => {
     expect(await find(['a1', 'b1'])).toEqual(plainImportMapping)
   })
 
+  it('is remembered for a header of several rows under its joined names', async () => {
+    await put('Zeitreihe,Dickenreihe\n(s),(mm)\n1.7,0.43\n', { mapping: { ...plainImportMapping, headerRows: 2 } })
+    expect(await find(['Zeitreihe (s)', 'Dickenreihe (mm)'])).toMatchObject({ headerRows: 2 })
+  })
+
   it('is also remembered under the header that the client looked for', async () => {
     await put('a2,b2\n1.7,0.43\n', { more: { header: JSON.stringify(['what the', 'client saw']) } })
     expect(await find(['what the', 'client saw'])).toEqual(plainImportMapping)
