@@ -1,6 +1,7 @@
 import {
   depthAt,
   exposureForDepth,
+  exposureForLayer,
   fitWorkingCurve,
   planFilmExposures,
   type FilmReading,
@@ -24,6 +25,7 @@ export const filmQuantities = [
   'Ec',
   'E(100 µm)',
   'E(200 µm)',
+  'far-side rule',
   'one film at 200 µm',
   'depth of one new film',
 ] as const
@@ -75,6 +77,11 @@ export function filmCoverage(options: {
     for (const depth of [100, 200] as const) {
       tallies[`E(${depth} µm)`].add(exposureForDepth(fit, depth).meanInterval, trueExposure(truth, depth))
     }
+    const rule = { kind: 'far-side-dose', doseRatio: 4 } as const
+    tallies['far-side rule'].add(
+      exposureForLayer(fit, { layerHeightMicrometres: 50, rule }).meanInterval,
+      4 * truth.criticalExposure * Math.expm1(50 / truth.penetrationDepthMicrometres),
+    )
     // One new film of unknown exposure, measured as it comes: does the interval hold the exposure it had?
     const measured = scattered(truth, 200, random)
     tallies['one film at 200 µm'].add(
@@ -266,6 +273,7 @@ function newTallies(): Record<FilmQuantity, CoverageTally> {
     Ec: new CoverageTally(),
     'E(100 µm)': new CoverageTally(),
     'E(200 µm)': new CoverageTally(),
+    'far-side rule': new CoverageTally(),
     'one film at 200 µm': new CoverageTally(),
     'depth of one new film': new CoverageTally(),
   }
@@ -277,6 +285,7 @@ function results(tallies: Record<FilmQuantity, CoverageTally>): Record<FilmQuant
     Ec: tallies.Ec.result(),
     'E(100 µm)': tallies['E(100 µm)'].result(),
     'E(200 µm)': tallies['E(200 µm)'].result(),
+    'far-side rule': tallies['far-side rule'].result(),
     'one film at 200 µm': tallies['one film at 200 µm'].result(),
     'depth of one new film': tallies['depth of one new film'].result(),
   }
