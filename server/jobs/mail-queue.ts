@@ -1,13 +1,20 @@
+import { setTimeout as wait } from 'node:timers/promises'
 import { sql } from 'drizzle-orm'
 import nodemailer from 'nodemailer'
 import PgBoss from 'pg-boss'
 import type { Logger } from 'pino'
 import type { Executor, Mail, MailQueue } from '../dependencies.ts'
+import { loggable } from '../loggable.ts'
 
 const queueName = 'mail'
 
+/** Tries of one mail, the last of them two weeks after the first; a mail waits no longer, since its link is void by then. */
+const retries = { retryLimit: 20, retryDelay: 5, retryBackoff: true, retentionDays: 14 }
+/** A server that died with a mail in hand is waited for this long before another server sends it. */
+const sendSecondsMax = 60
+
 export interface RunningMailQueue extends MailQueue {
-  /** Finishes the mail in hand and stops looking for more. */
+  /** Finishes the mail in hand and looks for no more. */
   stop(): Promise<void>
 }
 
@@ -29,35 +36,74 @@ function withinTransaction(database: Executor) {
 
 /**
  * Mails wait in PostgreSQL and leave by SMTP, with retries: a mail server that is down delays and loses nothing, and a
- * server that dies between the change and the mail sends it when it is back.
+ * server that dies between the change and the mail sends it when it is back. A mail that was sent is deleted, since its
+ * text holds a link that opens something.
+ *
+ * Every server empties the one queue; no mail is in two hands.
  */
 export async function startMailQueue(options: {
   readonly databaseUrl: string
   readonly smtpUrl: string
   readonly from: string
   readonly logger: Logger
-  readonly pollingSeconds?: number
+  readonly pollingMilliseconds?: number
+  readonly retryDelaySeconds?: number
 }): Promise<RunningMailQueue> {
   const { logger } = options
-  const boss = new PgBoss({ connectionString: options.databaseUrl, max: 3, application_name: 'fanlight mail' })
-  boss.on('error', error => logger.error({ err: error }, 'mail queue'))
+  const boss = new PgBoss({
+    connectionString: options.databaseUrl, max: 3, application_name: 'fanlight mail', schedule: false, maintenanceIntervalSeconds: 30,
+  })
+  boss.on('error', error => logger.warn({ err: loggable(error) }, 'mail queue'))
   await boss.start()
   await boss.createQueue(queueName)
-  const transport = nodemailer.createTransport(options.smtpUrl)
-  await boss.work(queueName, { pollingIntervalSeconds: options.pollingSeconds ?? 1, batchSize: 1 }, async jobs => {
-    for (const job of jobs) {
-      if (!isMail(job.data)) throw new Error('a mail job without a mail')
-      const { to, subject, text } = job.data
-      await transport.sendMail({ from: options.from, to, subject, text, messageId: `<${job.id}@fanlight.local>` })
+  const transport = nodemailer.createTransport({ url: options.smtpUrl, connectionTimeout: 10_000, greetingTimeout: 10_000, socketTimeout: 20_000 })
+  const settings = { ...retries, retryDelay: options.retryDelaySeconds ?? retries.retryDelay, expireInSeconds: sendSecondsMax }
+
+  async function send(job: PgBoss.Job<unknown>): Promise<void> {
+    if (!isMail(job.data)) throw new Error('a mail job without a mail')
+    const { to, subject, text } = job.data
+    // The same id at every try, so that a mailbox may drop a second copy.
+    await transport.sendMail({ from: options.from, to, subject, text, messageId: `<${job.id}@fanlight>` })
+  }
+
+  async function deliver(job: PgBoss.Job<unknown>): Promise<void> {
+    try {
+      await send(job)
+    } catch (error) {
+      logger.warn({ err: loggable(error), job: job.id }, 'a mail could not be handed over; it is tried again')
+      await boss.fail(queueName, job.id, { message: error instanceof Error ? error.message : 'unknown' })
+      return
     }
-  })
+    await boss.deleteJob(queueName, job.id)
+  }
+
+  const stopping = new AbortController()
+  const pause = () => wait(options.pollingMilliseconds ?? 1000, undefined, { signal: stopping.signal }).catch(() => {})
+
+  // pg-boss's own worker does not wait for its last word on a job; while PostgreSQL restarts that would end the process.
+  async function emptyQueue(): Promise<void> {
+    while (!stopping.signal.aborted) {
+      try {
+        const [job] = await boss.fetch(queueName, { batchSize: 1 })
+        if (job === undefined) await pause()
+        else await deliver(job)
+      } catch (error) {
+        logger.warn({ err: loggable(error) }, 'mail queue')
+        await pause()
+      }
+    }
+  }
+  const emptying = emptyQueue()
+
   return {
     async enqueue(mail, database) {
-      const settings = { retryLimit: 20, retryDelay: 5, retryBackoff: true, expireInSeconds: 120 }
-      await boss.send(queueName, { ...mail }, database === undefined ? settings : { ...settings, db: withinTransaction(database) })
+      const { to, subject, text } = mail
+      await boss.send(queueName, { to, subject, text }, database === undefined ? settings : { ...settings, db: withinTransaction(database) })
     },
     async stop() {
-      await boss.stop({ graceful: true, timeout: 5000 })
+      stopping.abort()
+      await emptying
+      await boss.stop({ graceful: false })
       transport.close()
     },
   }

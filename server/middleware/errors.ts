@@ -2,6 +2,7 @@ import type { ErrorRequestHandler, Request, Response } from 'express'
 import type { Logger } from 'pino'
 import { errorStatus, type ErrorCode, type Problem } from '#shared/contracts/error.ts'
 import { AppError } from '../errors.ts'
+import { loggable } from '../loggable.ts'
 
 const titles: Partial<Record<ErrorCode, string>> = {
   'validation-failed': 'Some fields need another value',
@@ -24,18 +25,31 @@ function asAppError(error: unknown): AppError | null {
     return new AppError('bad-request', { detail: 'The request broke off half-way.' })
   }
   if (error instanceof URIError) return new AppError('bad-request', { detail: 'The address is not well-formed.' })
-  if ('status' in error && error.status === 404) return new AppError('not-found', { detail: 'There is no such file.' })
+  if (isDatabaseAway(error)) {
+    return new AppError('service-unavailable', { detail: 'The database does not answer just now. Nothing was saved; try again in a moment.' })
+  }
   const code = postgresCode(error)
-  // 57P0x: PostgreSQL shuts down or restarts; 53300: no connection left; 08xxx: connection lost.
-  if (code !== null && (/^57P0[123]$/.test(code) || code === '53300' || code.startsWith('08'))) {
-    return new AppError('service-unavailable', { detail: 'The database does not answer just now. Nothing was saved; try again in a moment.' })
+  // 22021 and 22P05: a zero byte in a text or in JSON, which PostgreSQL cannot hold.
+  if (code === '22021' || code === '22P05') return new AppError('validation-failed', { detail: 'A text holds a character that cannot be stored.' })
+  if ('status' in error && error.status === 404) return new AppError('not-found', { detail: 'There is no such file.' })
+  // Express' own parts refuse with such a status: a body that is not the gzip it says, a range that does not exist.
+  if ('status' in error && typeof error.status === 'number' && error.status >= 400 && error.status < 500) {
+    return new AppError('bad-request', { detail: 'The request cannot be read.' })
   }
-  if (code === 'ECONNREFUSED' || code === 'ECONNRESET') {
-    return new AppError('service-unavailable', { detail: 'The database does not answer just now. Nothing was saved; try again in a moment.' })
-  }
-  // 22021: a zero byte in a text, which PostgreSQL cannot hold.
-  if (code === '22021') return new AppError('validation-failed', { detail: 'A text holds a character that cannot be stored.' })
   return null
+}
+
+/** PostgreSQL restarts, is full, or the way to it is cut: nothing that a caller or we did wrong. */
+export function isDatabaseAway(error: unknown): boolean {
+  const code = postgresCode(error)
+  // 57P0x: PostgreSQL shuts down or starts up; 53300: no connection left; 08xxx: connection lost.
+  if (code !== null && (/^57P0[123]$/.test(code) || code === '53300' || code.startsWith('08'))) return true
+  if (code === 'ECONNREFUSED' || code === 'ECONNRESET' || code === 'EPIPE') return true
+  // The driver gives these no code.
+  for (let e: unknown = error; e instanceof Error; e = e.cause) {
+    if (/^(Connection terminated|timeout exceeded when trying to connect|Client has encountered a connection error)/.test(e.message)) return true
+  }
+  return false
 }
 
 /** The SQLSTATE of an error that Drizzle may have wrapped. */
@@ -79,7 +93,7 @@ export function errorHandler(logger: Logger): ErrorRequestHandler {
       return
     }
     const known = asAppError(error)
-    if (known === null) logger.error({ err: error, requestId: request.id }, 'unexpected error')
+    if (known === null) logger.error({ err: loggable(error), requestId: request.id }, 'unexpected error')
     sendProblem(
       request,
       response,
