@@ -86,8 +86,23 @@ export async function takeSignUp(database: Executor, tokenHash: string, now: Dat
   return row ?? null
 }
 
-export async function insertPasswordReset(database: Executor, row: typeof passwordReset.$inferInsert): Promise<void> {
-  await database.insert(passwordReset).values(row)
+/** One statement whether the address is known or not: an unknown one gets no row, and the time tells nothing. */
+export async function insertPasswordReset(
+  database: Executor,
+  row: { id: string; email: string; tokenHash: string; createdAt: Date; expiresAt: Date },
+): Promise<void> {
+  const known = database
+    .select({
+      id: sql`${row.id}::uuid`.as('reset_id'),
+      userId: user.id,
+      tokenHash: sql`${row.tokenHash}::varchar`.as('token_hash'),
+      createdAt: sql`${row.createdAt.toISOString()}::timestamptz`.as('reset_created_at'),
+      expiresAt: sql`${row.expiresAt.toISOString()}::timestamptz`.as('expires_at'),
+      usedAt: sql`null::timestamptz`.as('used_at'),
+    })
+    .from(user)
+    .where(eq(user.email, row.email))
+  await database.insert(passwordReset).select(known)
 }
 
 /** Takes the reset of a link, once. */

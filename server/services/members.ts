@@ -3,10 +3,10 @@ import type { Invitation, Member, Shop } from '#shared/contracts/members.ts'
 import type { Dependencies, Executor } from '../dependencies.ts'
 import { AppError, notFound, staleEdit } from '../errors.ts'
 import { invitationMail } from '../mail/texts.ts'
-import { recordAudit } from '../repositories/audit.ts'
 import * as members from '../repositories/members.ts'
 import { countOwners, findUserByEmail, findUserById, insertUser } from '../repositories/people.ts'
 import type { ShopActor } from './actor.ts'
+import { auditBy } from './audit.ts'
 import { hashPassword } from './passwords.ts'
 import { hashToken, newToken } from './tokens.ts'
 
@@ -24,7 +24,7 @@ export async function renameShop(dependencies: Dependencies, actor: ShopActor, c
     const before = await members.readShop(transaction, actor.shopId)
     const after = await members.renameShop(transaction, actor.shopId, change)
     if (after === null) throw staleEdit('shop', before)
-    await audit(dependencies, transaction, actor, { action: 'renamed', thing: 'shop', thingId: actor.shopId, before: { name: before?.name }, after: { name: after.name } })
+    await auditBy(dependencies, transaction, actor, { action: 'renamed', thing: 'shop', thingId: actor.shopId, before: { name: before?.name }, after: { name: after.name } })
     return after
   })
 }
@@ -34,13 +34,16 @@ export const membersOf = (dependencies: Dependencies, actor: ShopActor): Promise
 export const invitationsOf = (dependencies: Dependencies, actor: ShopActor): Promise<Invitation[]> =>
   members.listInvitations(dependencies.database, actor.shopId, dependencies.clock())
 
-function audit(
-  dependencies: Dependencies,
-  database: Executor,
-  actor: ShopActor,
-  entry: { action: string; thing: string; thingId: string | null; before?: unknown; after?: unknown },
-): Promise<void> {
-  return recordAudit(database, { id: dependencies.newId(), shopId: actor.shopId, actorUserId: actor.userId, ...entry })
+/**
+ * Holds the shop's people still for a change, and asks again whether the actor may make it: whoever was demoted by
+ * another owner while waiting in line may not.
+ */
+async function holdPeople(transaction: Executor, actor: ShopActor): Promise<void> {
+  await members.lockShop(transaction, actor.shopId)
+  const present = await members.readMember(transaction, actor.shopId, actor.userId)
+  if (present?.role !== actor.role) {
+    throw new AppError('not-allowed', { detail: 'Your role in this shop was changed just now. Nothing was done; reload the page.' })
+  }
 }
 
 /** Inside the transaction and with the shop held still, so that two at once cannot both take the last owner away. */
@@ -52,13 +55,13 @@ async function keepAnOwner(transaction: Executor, shopId: string, leaving: Membe
 
 export async function changeRole(dependencies: Dependencies, actor: ShopActor, change: { userId: string; role: Role }): Promise<Member> {
   return dependencies.database.transaction(async transaction => {
-    await members.lockShop(transaction, actor.shopId)
+    await holdPeople(transaction, actor)
     const before = await members.readMember(transaction, actor.shopId, change.userId)
     if (before === null) throw notFound('member')
     if (before.role === change.role) return before
     await keepAnOwner(transaction, actor.shopId, before)
     await members.updateRole(transaction, actor.shopId, change.userId, change.role)
-    await audit(dependencies, transaction, actor, { action: 'role changed', thing: 'member', thingId: change.userId, before: { role: before.role }, after: { role: change.role } })
+    await auditBy(dependencies, transaction, actor, { action: 'role changed', thing: 'member', thingId: change.userId, before: { role: before.role }, after: { role: change.role } })
     return { ...before, role: change.role }
   })
 }
@@ -68,12 +71,12 @@ export async function removeMember(dependencies: Dependencies, actor: ShopActor,
     throw new AppError('not-allowed', { detail: `Your role (${actor.role}) can only remove yourself. Ask an owner of the shop.` })
   }
   await dependencies.database.transaction(async transaction => {
-    await members.lockShop(transaction, actor.shopId)
+    await holdPeople(transaction, actor)
     const before = await members.readMember(transaction, actor.shopId, userId)
     if (before === null) throw notFound('member')
     await keepAnOwner(transaction, actor.shopId, before)
     await members.deleteMember(transaction, actor.shopId, userId)
-    await audit(dependencies, transaction, actor, { action: 'removed', thing: 'member', thingId: userId, before: { role: before.role, email: before.email } })
+    await auditBy(dependencies, transaction, actor, { action: 'removed', thing: 'member', thingId: userId, before: { role: before.role, email: before.email } })
   })
 }
 
@@ -82,7 +85,7 @@ export async function invite(dependencies: Dependencies, actor: ShopActor, body:
   const token = newToken()
   const now = dependencies.clock()
   return database.transaction(async transaction => {
-    await members.lockShop(transaction, actor.shopId)
+    await holdPeople(transaction, actor)
     const people = await members.listMembers(transaction, actor.shopId)
     if (people.some(person => person.email === body.email)) {
       throw new AppError('already-member', { detail: `${body.email} belongs to this shop already; change the role in the list.` })
@@ -92,7 +95,7 @@ export async function invite(dependencies: Dependencies, actor: ShopActor, body:
     await members.insertInvitation(transaction, { ...made, shopId: actor.shopId, tokenHash: hashToken(token), invitedByUserId: actor.userId })
     const shop = await members.readShop(transaction, actor.shopId)
     await mailQueue.enqueue(invitationMail(body.email, { shopName: shop?.name ?? '', invitedBy: actor.displayName, role: body.role, link: `${config.publicUrl}/invitation?token=${token}` }), transaction)
-    await audit(dependencies, transaction, actor, { action: 'invited', thing: 'invitation', thingId: made.id, after: { email: body.email, role: body.role } })
+    await auditBy(dependencies, transaction, actor, { action: 'invited', thing: 'invitation', thingId: made.id, after: { email: body.email, role: body.role } })
     return { ...made, invitedBy: actor.displayName, createdAt: made.createdAt.toISOString(), expiresAt: made.expiresAt.toISOString() }
   })
 }
@@ -101,7 +104,7 @@ export async function revokeInvitation(dependencies: Dependencies, actor: ShopAc
   await dependencies.database.transaction(async transaction => {
     const before = await members.revokeInvitation(transaction, actor.shopId, invitationId, dependencies.clock())
     if (before === null) throw notFound('open invitation')
-    await audit(dependencies, transaction, actor, { action: 'revoked', thing: 'invitation', thingId: invitationId, before })
+    await auditBy(dependencies, transaction, actor, { action: 'revoked', thing: 'invitation', thingId: invitationId, before })
   })
 }
 
@@ -131,9 +134,13 @@ export async function acceptInvitation(
     if (!(await members.acceptInvitation(transaction, found.id, now))) throw notValid()
     const joined = await members.insertMember(transaction, { shopId: found.shopId, userId, role: found.role })
     if (!joined) throw new AppError('already-member', { detail: 'You belong to this shop already.' })
-    await recordAudit(transaction, { id: dependencies.newId(), shopId: found.shopId, actorUserId: userId, action: 'joined', thing: 'member', thingId: userId, after: { role: found.role } })
+    await auditBy(dependencies, transaction, { shopId: found.shopId, userId }, { action: 'joined', thing: 'member', thingId: userId, after: { role: found.role } })
     return userId
   })
+}
+
+function hasAccount(email: string): AppError {
+  return new AppError('sign-in-required', { detail: `${email} has an account: sign in with it, then accept.` })
 }
 
 async function personFor(
@@ -147,11 +154,12 @@ async function personFor(
     if (present?.id === known?.id && known !== null) return known.id
     throw new AppError('not-allowed', { detail: `This invitation is for ${given.email}, but you are signed in as ${present?.email ?? 'somebody else'}. Sign out first.` })
   }
-  if (known !== null) throw new AppError('sign-in-required', { detail: `${given.email} has an account: sign in with it, then accept.` })
+  if (known !== null) throw hasAccount(given.email)
   if (given.passwordHash === null || given.displayName === null) {
     throw new AppError('validation-failed', { detail: 'Give your name and a password.', fields: [{ path: 'body.newPerson', sentence: 'Give your name and a password.' }] })
   }
   const id = dependencies.newId()
-  await insertUser(transaction, { id, email: given.email, displayName: given.displayName, passwordHash: given.passwordHash })
+  const made = await insertUser(transaction, { id, email: given.email, displayName: given.displayName, passwordHash: given.passwordHash })
+  if (!made) throw hasAccount(given.email)
   return id
 }

@@ -3,11 +3,11 @@ import type { completePasswordReset, signIn, signUp } from '#shared/contracts/se
 import type { Dependencies } from '../dependencies.ts'
 import { AppError } from '../errors.ts'
 import { alreadyRegisteredMail, confirmSignUpMail, noAccountMail, passwordResetMail } from '../mail/texts.ts'
-import { recordAudit } from '../repositories/audit.ts'
 import {
   deleteSessions, findUserByEmail, findUserById, insertPasswordReset, insertShopWithOwner, insertSignUp, insertUser, takePasswordReset,
   takeSignUp, updateDisplayName, updatePassword, voidPasswordResets,
 } from '../repositories/people.ts'
+import { auditBy, auditByPerson } from './audit.ts'
 import { hashPassword, passwordMatches } from './passwords.ts'
 import { hashToken, newToken } from './tokens.ts'
 
@@ -49,7 +49,7 @@ export async function confirmSignUp(dependencies: Dependencies, token: string): 
     if (!made) throw linkNotValid('This address has an account by now: sign in.')
     const shopId = dependencies.newId()
     await insertShopWithOwner(transaction, { shopId, name: pending.shopName, ownerId: userId })
-    await recordAudit(transaction, { id: dependencies.newId(), shopId, actorUserId: userId, action: 'created', thing: 'shop', thingId: shopId, after: { name: pending.shopName } })
+    await auditBy(dependencies, transaction, { shopId, userId }, { action: 'created', thing: 'shop', thingId: shopId, after: { name: pending.shopName } })
     return userId
   })
 }
@@ -63,18 +63,18 @@ export async function checkSignIn(dependencies: Dependencies, body: OperationBod
   return found.id
 }
 
+/** The same work and the same answer for known and unknown addresses. */
 export async function beginPasswordReset(dependencies: Dependencies, email: string): Promise<void> {
   const { config, database, mailQueue } = dependencies
   const found = await findUserByEmail(database, email)
   const token = newToken()
   const now = dependencies.clock()
+  const mail = found === null
+    ? noAccountMail(email, { link: `${config.publicUrl}/sign-up` })
+    : passwordResetMail(email, { displayName: found.displayName, link: `${config.publicUrl}/reset/new?token=${token}` })
   await database.transaction(async transaction => {
-    if (found === null) {
-      await mailQueue.enqueue(noAccountMail(email, { link: `${config.publicUrl}/sign-up` }), transaction)
-      return
-    }
-    await insertPasswordReset(transaction, { id: dependencies.newId(), userId: found.id, tokenHash: hashToken(token), createdAt: now, expiresAt: new Date(now.getTime() + resetHours * hour) })
-    await mailQueue.enqueue(passwordResetMail(email, { displayName: found.displayName, link: `${config.publicUrl}/reset/new?token=${token}` }), transaction)
+    await insertPasswordReset(transaction, { id: dependencies.newId(), email, tokenHash: hashToken(token), createdAt: now, expiresAt: new Date(now.getTime() + resetHours * hour) })
+    await mailQueue.enqueue(mail, transaction)
   })
 }
 
@@ -87,11 +87,16 @@ export async function finishPasswordReset(dependencies: Dependencies, body: Oper
     await updatePassword(transaction, taken.userId, passwordHash)
     await voidPasswordResets(transaction, taken.userId, now)
     await deleteSessions(transaction, taken.userId, null)
+    await auditByPerson(dependencies, transaction, taken.userId, { action: 'set a new password' })
   })
 }
 
 export async function renamePerson(dependencies: Dependencies, userId: string, displayName: string): Promise<void> {
-  await updateDisplayName(dependencies.database, userId, displayName)
+  await dependencies.database.transaction(async transaction => {
+    const before = await findUserById(transaction, userId)
+    await updateDisplayName(transaction, userId, displayName)
+    await auditByPerson(dependencies, transaction, userId, { action: 'renamed', before: { displayName: before?.displayName }, after: { displayName } })
+  })
 }
 
 /** Ends the person's other sessions: whoever knew the old password is out. */
@@ -107,6 +112,7 @@ export async function changeOwnPassword(
   await dependencies.database.transaction(async transaction => {
     await updatePassword(transaction, change.userId, passwordHash)
     await deleteSessions(transaction, change.userId, change.sessionId)
+    await auditByPerson(dependencies, transaction, change.userId, { action: 'set a new password' })
   })
 }
 
@@ -115,6 +121,6 @@ export async function openShop(dependencies: Dependencies, owner: { userId: stri
   await dependencies.database.transaction(async transaction => {
     const shopId = dependencies.newId()
     await insertShopWithOwner(transaction, { shopId, name, ownerId: owner.userId })
-    await recordAudit(transaction, { id: dependencies.newId(), shopId, actorUserId: owner.userId, action: 'created', thing: 'shop', thingId: shopId, after: { name } })
+    await auditBy(dependencies, transaction, { shopId, userId: owner.userId }, { action: 'created', thing: 'shop', thingId: shopId, after: { name } })
   })
 }
