@@ -38,6 +38,8 @@ export interface Config {
   readonly host: string
   readonly port: number
   readonly production: boolean
+  /** Cookies that only travel by HTTPS: wherever people reach us by it. */
+  readonly secureCookies: boolean
   readonly sessionSecret: string
   readonly publicUrl: string
   readonly smtpUrl: string | null
@@ -73,14 +75,19 @@ export function readConfig(environment: Readonly<Record<string, string | undefin
   if (production && settings.PUBLIC_URL === undefined) {
     throw new Error('The settings are not usable:\nPUBLIC_URL: required in production; links in mails begin with it')
   }
+  const publicUrl = (settings.PUBLIC_URL ?? `http://127.0.0.1:${settings.PORT}`).replace(/\/$/, '')
+  if (production && !publicUrl.startsWith('https:')) {
+    throw new Error('The settings are not usable:\nPUBLIC_URL: begins with https:// in production; sign-in cookies travel by HTTPS only')
+  }
   return {
     databaseUrl: settings.DATABASE_URL,
     databaseConnectionsMax: settings.DATABASE_CONNECTIONS_MAX,
     host: settings.HOST,
     port: settings.PORT,
     production,
+    secureCookies: publicUrl.startsWith('https:'),
     sessionSecret: settings.SESSION_SECRET ?? randomBytes(32).toString('hex'),
-    publicUrl: (settings.PUBLIC_URL ?? `http://127.0.0.1:${settings.PORT}`).replace(/\/$/, ''),
+    publicUrl,
     smtpUrl: settings.SMTP_URL ?? null,
     mailFrom: settings.MAIL_FROM,
     trustedProxies: settings.TRUSTED_PROXIES,

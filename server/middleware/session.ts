@@ -23,8 +23,10 @@ export function sessionMiddleware(config: Config, pool: pg.Pool): RequestHandler
     name: sessionCookieName,
     secret: config.sessionSecret,
     resave: false,
+    // Whether the visitor came by HTTPS is said by the proxy in front of us, if there is one.
+    ...(config.secureCookies ? { proxy: true } : {}),
     saveUninitialized: false,
-    cookie: { httpOnly: true, sameSite: 'lax', secure: config.production ? 'auto' : false, maxAge: sessionDays * 86_400_000 },
+    cookie: { httpOnly: true, sameSite: 'lax', secure: config.secureCookies, maxAge: sessionDays * 86_400_000 },
   })
   const prolong: RequestHandler = (request, _response, next) => {
     if (request.session.userId !== undefined) {

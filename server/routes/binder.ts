@@ -6,7 +6,7 @@ import type { Operation, OperationBody, OperationParams, OperationQuery, Operati
 import { AppError, notFound } from '../errors.ts'
 import type { Dependencies, Executor } from '../dependencies.ts'
 import type { Actor, ShopActor } from '../services/actor.ts'
-import { RateLimits } from '../middleware/rate-limit.ts'
+import { rateLimitCaller, RateLimits } from '../middleware/rate-limit.ts'
 import { findSignedIn } from '../services/sign-in-lookup.ts'
 import { onceForKey } from '../services/idempotency.ts'
 import { access } from './access.ts'
@@ -58,7 +58,7 @@ function baseVersionOf(operation: Operation, request: Request): number {
 /** Binds operations to handlers: rights, parsing, transactions and answers happen here and nowhere else. */
 export class Binder {
   readonly implemented = new Map<string, Operation>()
-  private readonly rateLimits: RateLimits
+  readonly rateLimits: RateLimits
 
   constructor(
     private readonly router: Router,
@@ -85,16 +85,16 @@ export class Binder {
         request,
         response,
       }
-      await this.rateLimits.count(operation.id, request, base.body)
+      await this.rateLimits.count(operation.id, rateLimitCaller(base))
       const run = async (database: Executor) => handler({ ...base, database } as unknown as Call<O>)
       const key = request.get('Idempotency-Key')
       const answer =
-        operation.retrySafe === true && key !== undefined && actor?.shopId != null
+        operation.retrySafe === true && key !== undefined && typeof actor?.shopId === 'string'
           ? await onceForKey(this.dependencies.database, {
               shopId: actor.shopId,
               userId: actor.userId,
               key,
-              requestHash: createHash('sha256').update(`${operation.id}\n${JSON.stringify(base.body)}`).digest('hex'),
+              requestHash: createHash('sha256').update(JSON.stringify([operation.id, base.params, base.body])).digest('hex'),
               run,
             })
           : await run(this.dependencies.database)

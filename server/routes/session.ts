@@ -4,6 +4,7 @@ import * as contract from '#shared/contracts/session.ts'
 import type { Dependencies } from '../dependencies.ts'
 import { sessionCookieName } from '../middleware/session.ts'
 import { issueCsrfToken } from '../middleware/csrf.ts'
+import { rateLimitCaller } from '../middleware/rate-limit.ts'
 import * as people from '../services/people.ts'
 import { describeSession } from '../services/session-view.ts'
 import type { Binder } from './binder.ts'
@@ -29,6 +30,7 @@ export function sessionRoutes(binder: Binder): void {
 
   binder.implement(contract.signIn, async call => {
     await startSession(call.request, await people.checkSignIn(dependencies, call.body))
+    await binder.rateLimits.forgive(contract.signIn.id, rateLimitCaller(call))
     return answer(call)
   })
 

@@ -5,8 +5,10 @@ import type { Operation } from '#shared/contracts/operation.ts'
 type JsonSchema = Record<string, unknown>
 
 const toJsonSchema = (schema: z.ZodType, io: 'input' | 'output'): JsonSchema => {
-  const { $schema: _dialect, ...rest } = z.toJSONSchema(schema, { io, unrepresentable: 'any' })
-  return rest
+  const made: JsonSchema = { ...z.toJSONSchema(schema, { io, unrepresentable: 'any' }) }
+  // The dialect is OpenAPI 3.1's own.
+  delete made.$schema
+  return made
 }
 
 /** Parameters of one place (path or query), one by one, as OpenAPI wants them. */
