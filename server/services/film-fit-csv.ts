@@ -77,7 +77,7 @@ export function fitCsv(study: Study, fit: { readonly outcome: WorkingCurveOutcom
     numberRow('measured_depth.lowest', 'micrometres', outcome.measuredRange.depthMicrometresMin),
     numberRow('measured_depth.highest', 'micrometres', outcome.measuredRange.depthMicrometresMax),
     ...layerRows(study, outcome, exposureUnit),
-    ...outcome.findings.map(finding => [`finding.${finding.code}`, finding.severity, null, null, null, null, null, finding.sentence]),
+    ...outcome.findings.map(finding => [`finding.${finding.code}`, '', null, null, null, null, null, `${finding.severity}: ${finding.sentence}`]),
     ...provenance,
   ])
 }
