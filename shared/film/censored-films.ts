@@ -15,7 +15,7 @@ export interface CensoredFilms {
 /**
  * Measured films first, then one censored film for each that is missing.
  *
- * A film of which one reading was measured counts as measured.
+ * A film of which one reading was measured counts as measured; one that the gauge puts at zero or below is missing.
  *
  * @throws {StatsError} `limit-out-of-range`, and as `collectFilms`
  */
@@ -23,14 +23,14 @@ export function collectCensoredFilms(readings: readonly FilmReading[], limitMicr
   if (!(Number.isFinite(limitMicrometres) && limitMicrometres >= 0)) {
     throw new StatsError('limit-out-of-range', `the limit must be a depth from 0 µm, got ${limitMicrometres}`)
   }
-  const { films, censoredIndexes } = collectFilms(readings)
+  const { films, censoredIndexes, notAboveZeroIndexes } = collectFilms(readings)
   const keyOf = (reading: FilmReading): string | null => (reading.filmId === undefined ? null : `${reading.filmId}\n${reading.exposure}`)
   const known = new Set(films.flatMap(film => film.readingIndexes).flatMap(index => {
     const reading = readings[index]
     const key = reading === undefined ? null : keyOf(reading)
     return key === null ? [] : [key]
   }))
-  const missing = censoredIndexes.flatMap(index => {
+  const missing = [...censoredIndexes, ...notAboveZeroIndexes].flatMap(index => {
     const reading = readings[index]
     if (reading === undefined) return []
     const key = keyOf(reading)

@@ -129,6 +129,12 @@ describe('fitCensoredWorkingCurve', () => {
     expect(fittedOnly(fitCensoredWorkingCurve({ readings: [...readings, ...half], exposureKind: 'mJ/cm2', limitMicrometres: 15 })).censoredCount).toBe(0)
   })
 
+  it('takes a film that the gauge puts at zero or below as missing, too thin to measure', () => {
+    const said = fittedOnly(fitCensoredWorkingCurve({ readings: [missing(6), ...readings], exposureKind: 'mJ/cm2', limitMicrometres: 15 }))
+    const read = fittedOnly(fitCensoredWorkingCurve({ readings: [...measured([6], [-2]), ...readings], exposureKind: 'mJ/cm2', limitMicrometres: 15 }))
+    expect(read.criticalExposure).toEqual(said.criticalExposure)
+  })
+
   it('scales with the exposures: doubled exposures double Ec and leave Dp', () => {
     const all = [missing(7), missing(8), ...readings.slice(1)]
     const fit = fittedOnly(fitCensoredWorkingCurve({ readings: all, exposureKind: 'mJ/cm2', limitMicrometres: 15 }))
