@@ -1,51 +1,61 @@
 // npm run dev: PostgreSQL, server and client with hot reload of both sides.
 import { spawn } from 'node:child_process'
 import { join } from 'node:path'
-import { findFreePort, makePrivateFolder, startCluster } from '../db/cluster/cluster.mjs'
-import { checkNode, installPackages, installPostgres, root } from './lib/install.mjs'
-import { takeLock } from './lib/lock.mjs'
-import { dataFolder } from './lib/places.mjs'
-import { giveUp, say, step } from './lib/say.mjs'
+import { findFreePort } from '../db/cluster/cluster.mjs'
+import { close, closeLater, isClosing, runScript } from './lib/closing.mjs'
+import { checkNode, installPackages } from './lib/install.mjs'
+import { openDatabase, sessionSecret, takeDataFolder } from './lib/own-folder.mjs'
+import { choosePort } from './lib/ports.mjs'
+import { root } from './lib/places.mjs'
+import { say } from './lib/say.mjs'
 
-checkNode()
-const folder = dataFolder(root)
-makePrivateFolder(folder, process.getuid?.() === 0 ? 0o711 : 0o700)
-const lock = takeLock(folder)
-if (lock.kind === 'running') giveUp(`Fanlight already runs from this folder: ${lock.address}`)
-await installPackages()
-let url = process.env.DATABASE_URL
-let stopCluster = () => {}
-if (url === undefined || url === '') {
-  await installPostgres()
-  const cluster = await step('starting PostgreSQL', () => startCluster({ folder, durable: true }))
-  url = cluster.url
-  stopCluster = cluster.stop
+/** Starts one of the two watchers in a group of its own: the server that tsx restarts is its child. */
+function startWatcher(own, name, parameters, environment) {
+  const child = spawn(process.execPath, parameters, { cwd: root, env: { ...process.env, ...environment }, stdio: ['ignore', 'inherit', 'inherit'], detached: true })
+  if (child.pid !== undefined) own.keeper.tell('group', child.pid)
+  child.once('exit', (code, signal) => {
+    if (isClosing()) return
+    process.stderr.write(`\n${name} ended by itself (${signal ?? `code ${code}`}).\n`)
+    void close(1)
+  })
+  closeLater(() => new Promise(resolve => {
+    const tell = signal => {
+      try {
+        process.kill(-child.pid, signal)
+        return true
+      } catch {
+        return false
+      }
+    }
+    const began = Date.now()
+    tell('SIGTERM')
+    // The whole group must be gone, not only the watcher.
+    const look = setInterval(() => {
+      if (tell(Date.now() - began > 10_000 ? 'SIGKILL' : 0)) return
+      clearInterval(look)
+      resolve()
+    }, 50)
+  }))
 }
-const apiPort = await findFreePort()
-const clientPort = Number(process.env.PORT ?? 5173)
-const environment = { ...process.env, DATABASE_URL: url, PORT: String(apiPort), PUBLIC_URL: `http://127.0.0.1:${clientPort}`, FANLIGHT_API_PORT: String(apiPort) }
-// tsx watches the server's files; Vite passes /api on to it.
-const children = [
-  spawn(process.execPath, [join(root, 'node_modules', 'tsx', 'dist', 'cli.mjs'), 'watch', '--clear-screen=false', 'server/main.ts'], { cwd: root, env: environment, stdio: ['ignore', 'inherit', 'inherit'], detached: true }),
-  spawn(process.execPath, [join(root, 'node_modules', 'vite', 'bin', 'vite.js'), '--host', '127.0.0.1', '--port', String(clientPort)], { cwd: root, env: environment, stdio: ['ignore', 'inherit', 'inherit'], detached: true }),
-]
-lock.note(`http://127.0.0.1:${clientPort}`)
-say(`Client with hot reload: http://127.0.0.1:${clientPort}   (API on ${apiPort})`)
 
-let ending = false
-async function close() {
-  if (ending) return
-  ending = true
-  await Promise.all(children.map(child => new Promise(resolve => {
-    if (child.exitCode !== null) return resolve()
-    child.once('exit', resolve)
-    // The whole group: the watcher's server is its child.
-    try { process.kill(-child.pid, 'SIGTERM') } catch { resolve() }
-    setTimeout(resolve, 10_000)
-  })))
-  stopCluster()
-  lock.release()
-  process.exit(0)
-}
-for (const signal of ['SIGINT', 'SIGTERM', 'SIGHUP']) process.on(signal, () => void close())
-for (const child of children) child.once('exit', () => void close())
+runScript(async () => {
+  checkNode()
+  const own = await takeDataFolder()
+  await installPackages()
+  const databaseUrl = await openDatabase(own)
+  const apiPort = await findFreePort()
+  const clientPort = await choosePort(process.env)
+  const address = `http://127.0.0.1:${clientPort}`
+  const environment = {
+    DATABASE_URL: databaseUrl,
+    PORT: String(apiPort),
+    PUBLIC_URL: process.env.PUBLIC_URL ?? address,
+    SESSION_SECRET: sessionSecret(own.folder),
+    FANLIGHT_API_PORT: String(apiPort),
+  }
+  if (isClosing()) return
+  startWatcher(own, 'The server', [join(root, 'node_modules', 'tsx', 'dist', 'cli.mjs'), 'watch', '--clear-screen=false', 'server/main.ts'], environment)
+  startWatcher(own, 'Vite', [join(root, 'node_modules', 'vite', 'bin', 'vite.js'), '--host', '127.0.0.1', '--port', String(clientPort), '--strictPort'], environment)
+  own.noteAddress(address)
+  say(`\nClient with hot reload: ${address}   (API on ${apiPort}; FANLIGHT_READY below names the demo sign-ins)\nCtrl-C ends everything.\n`)
+}, { signalIsFine: true })

@@ -1,13 +1,15 @@
-import { spawnSync } from 'node:child_process'
 import { createHash } from 'node:crypto'
-import { existsSync, readFileSync, readdirSync, writeFileSync } from 'node:fs'
+import { existsSync, mkdirSync, readFileSync, readdirSync, renameSync, rmSync, writeFileSync } from 'node:fs'
 import { join } from 'node:path'
-import { root } from './install.mjs'
+import { runChild } from './closing.mjs'
+import { alone } from './lock.mjs'
+import { artifactsFolder, root } from './places.mjs'
 import { step } from './say.mjs'
 
 export const clientFolder = join(root, 'dist')
 
 function* filesBelow(folder) {
+  if (!existsSync(folder)) return
   for (const entry of readdirSync(folder, { withFileTypes: true }).sort((a, b) => (a.name < b.name ? -1 : 1))) {
     const path = join(folder, entry.name)
     if (entry.isDirectory()) yield* filesBelow(path)
@@ -17,8 +19,10 @@ function* filesBelow(folder) {
 
 function sourcesHash() {
   const hash = createHash('sha256')
-  const files = [...filesBelow(join(root, 'src')), ...filesBelow(join(root, 'shared')), ...['index.html', 'vite.config.ts', 'package-lock.json'].map(name => join(root, name))]
-  for (const file of files) hash.update(file.slice(root.length)).update('\0').update(readFileSync(file))
+  const single = ['index.html', 'vite.config.ts', 'tsconfig.json', 'package.json', 'package-lock.json'].map(name => join(root, name))
+  for (const file of [...['src', 'shared', 'public'].flatMap(name => [...filesBelow(join(root, name))]), ...single]) {
+    hash.update(file.slice(root.length)).update('\0').update(readFileSync(file)).update('\0')
+  }
   return hash.digest('hex')
 }
 
@@ -26,10 +30,23 @@ function sourcesHash() {
 export async function buildClient() {
   const stamp = join(clientFolder, '.sources')
   const hash = sourcesHash()
-  if (existsSync(stamp) && readFileSync(stamp, 'utf8') === hash) return
-  await step('building the client', () => {
-    const { status, stdout, stderr } = spawnSync(process.execPath, [join(root, 'node_modules', 'vite', 'bin', 'vite.js'), 'build', '--logLevel', 'warn'], { cwd: root, encoding: 'utf8' })
-    if (status !== 0) throw new Error(`The client does not build:\n${stdout}\n${stderr}`)
-    writeFileSync(stamp, hash)
+  const upToDate = () => existsSync(stamp) && readFileSync(stamp, 'utf8') === hash
+  if (upToDate()) return
+  mkdirSync(artifactsFolder, { recursive: true })
+  await alone(join(artifactsFolder, 'build.lock'), async () => {
+    if (upToDate()) return
+    // Made aside and then moved: a server that runs from this checkout never serves a half-made client.
+    const aside = join(artifactsFolder, 'client')
+    const former = join(artifactsFolder, 'client-before')
+    await step('building the client', async () => {
+      const vite = join(root, 'node_modules', 'vite', 'bin', 'vite.js')
+      const { status, output } = await runChild(process.execPath, [vite, 'build', '--logLevel', 'warn', '--outDir', aside, '--emptyOutDir'], { cwd: root })
+      if (status !== 0) throw new Error(`The client does not build:\n${output}`)
+    })
+    writeFileSync(join(aside, '.sources'), hash)
+    rmSync(former, { recursive: true, force: true })
+    if (existsSync(clientFolder)) renameSync(clientFolder, former)
+    renameSync(aside, clientFolder)
+    rmSync(former, { recursive: true, force: true })
   })
 }

@@ -1,51 +1,59 @@
-import { spawn } from 'node:child_process'
-import { existsSync, mkdirSync, readFileSync, rmSync } from 'node:fs'
+import { existsSync, mkdtempSync, readFileSync, rmSync } from 'node:fs'
 import { createRequire } from 'node:module'
+import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { performance } from 'node:perf_hooks'
+import { runChild } from './closing.mjs'
+import { countsOf } from './counts.mjs'
 import { enginesRefusing } from './engines.mjs'
-import { root } from './install.mjs'
+import { root } from './places.mjs'
 import { say } from './say.mjs'
 
-const artifacts = join(root, '.artifacts')
+/** Oldest Node that package.json admits. */
+const oldestNode = '20.19.0'
 
-/** Runs a program of node_modules with its output shown, and answers its exit code. */
-function run(script, parameters, environment = {}) {
-  return new Promise(resolve => {
-    const child = spawn(process.execPath, [join(root, 'node_modules', script), ...parameters], {
-      cwd: root, env: { ...process.env, ...environment }, stdio: ['ignore', 'inherit', 'inherit'],
-    })
-    child.once('exit', code => resolve(code ?? 1))
-  })
+/** Runs a program of node_modules with its output shown. */
+async function run(script, parameters, options = {}) {
+  const { status } = await runChild(process.execPath, [join(root, 'node_modules', script), ...parameters], { cwd: root, show: true, minutesMax: 25, ...options })
+  return status
 }
 
-/**
- * @typedef {{ passed: number, failed: number, skipped: number }} Counts
- */
+/** Says the name before, the outcome and the seconds after; and every half minute that it is still at work. */
+async function timed(name, work, outcome) {
+  const start = performance.now()
+  const seconds = () => ((performance.now() - start) / 1000).toFixed(1)
+  say(`\n▸ ${name}`)
+  const timer = setInterval(() => say(`  … ${name}: ${Math.round(Number(seconds()))} s so far`), 30_000)
+  try {
+    const result = await work()
+    say(`  ${name}: ${outcome(result)} after ${seconds()} s`)
+    return result
+  } finally {
+    clearInterval(timer)
+  }
+}
 
 /** One step that passes or fails as a whole. */
 async function wholeStep(name, work) {
-  const start = performance.now()
-  say(`\n▸ ${name}`)
-  const code = await work()
-  say(`  ${code === 0 ? 'passed' : 'FAILED'} after ${((performance.now() - start) / 1000).toFixed(1)} s`)
+  const code = await timed(name, work, status => (status === 0 ? 'passed' : 'FAILED'))
   return { passed: code === 0 ? 1 : 0, failed: code === 0 ? 0 : 1, skipped: 0 }
 }
 
-function checkEngines() {
+function checkLockfile() {
   const lock = JSON.parse(readFileSync(join(root, 'package-lock.json'), 'utf8'))
+  // In the lockfile since several tools of ours stand on it.
   const semver = createRequire(join(root, 'package.json'))('semver')
-  const refusing = enginesRefusing(lock, '20.19.0', semver.satisfies)
+  const refusing = enginesRefusing(lock, oldestNode, semver.satisfies)
   for (const line of refusing) say(`  ${line}`)
-  const hosts = Object.values(lock.packages).filter(facts => typeof facts.resolved === 'string' && facts.resolved.startsWith('http')).length
-  if (hosts > 0) say(`  the lockfile names a download address ${hosts} times`)
-  return refusing.length + hosts === 0 ? 0 : 1
+  const addresses = Object.values(lock.packages).filter(facts => typeof facts.resolved === 'string' && facts.resolved.startsWith('http')).length
+  if (addresses > 0) say(`  the lockfile names a download address ${addresses} times: .npmrc's omit-lockfile-registry-resolved was not heeded`)
+  return refusing.length + addresses === 0 ? 0 : 1
 }
 
-/** Lint, types and engines. */
+/** Lockfile, lint and types. */
 export async function staticChecks() {
   return [
-    await wholeStep('engines of all packages', checkEngines),
+    await wholeStep(`all packages run on Node ${oldestNode}`, async () => checkLockfile()),
     await wholeStep('lint', () => run('eslint/bin/eslint.js', ['.', '--max-warnings', '0', '--cache', '--cache-location', 'node_modules/.cache/eslint/'])),
     await wholeStep('types', () => run('vue-tsc/bin/vue-tsc.js', ['--noEmit'])),
     await wholeStep('types of shared/ without browser and Node', () => run('typescript/bin/tsc', ['-p', 'shared/tsconfig.json', '--noEmit'])),
@@ -53,41 +61,26 @@ export async function staticChecks() {
 }
 
 /**
- * Runs one vitest project (or files) and answers its counts, read from its report file.
+ * Runs one vitest project and answers its counts, read from its report file.
  *
  * @param {string} project
- * @param {{ filters?: readonly string[], environment?: Record<string, string> }} options
- * @returns {Promise<Counts>}
+ * @param {{ words?: readonly string[], environment?: Record<string, string>, started?: (pid: number) => void }} [options] words:
+ *   filters and options for vitest
+ * @returns {Promise<import('./counts.mjs').Counts>}
  */
-export async function testProject(project, { filters = [], environment = {} } = {}) {
-  mkdirSync(artifacts, { recursive: true })
-  const report = join(artifacts, `${project}-tests.json`)
-  rmSync(report, { force: true })
-  const start = performance.now()
-  say(`\n▸ tests: ${project}`)
-  const code = await run('vitest/vitest.mjs', ['run', '--project', project, '--passWithNoTests', '--reporter=default', '--reporter=json', `--outputFile.json=${report}`, ...filters], environment)
-  const facts = existsSync(report) ? JSON.parse(readFileSync(report, 'utf8')) : null
-  const counts = facts === null
-    ? { passed: 0, failed: 1, skipped: 0 }
-    : { passed: facts.numPassedTests, failed: facts.numFailedTests, skipped: facts.numPendingTests + (facts.numTodoTests ?? 0) }
-  // A file that breaks before its first test counts no failed test, yet the run is red.
-  if (code !== 0 && counts.failed === 0) counts.failed = 1
-  say(`  ${counts.passed} passed, ${counts.failed} failed after ${((performance.now() - start) / 1000).toFixed(1)} s`)
-  return counts
-}
-
-/**
- * The one closing line, and the exit code that goes with it.
- *
- * @param {readonly Counts[]} parts
- * @param {number} testsRun
- */
-export function closingLine(parts, testsRun) {
-  const sum = key => parts.reduce((total, part) => total + part[key], 0)
-  const failed = sum('failed') + (testsRun === 0 ? 1 : 0)
-  const skipped = sum('skipped')
-  return {
-    line: `${sum('passed')} passed, ${failed} failed${skipped > 0 ? `, ${skipped} skipped` : ''}`,
-    code: failed === 0 ? 0 : 1,
+export async function testProject(project, { words = [], environment = {}, started } = {}) {
+  // A folder of its own: two runs from one checkout must not read each other's report.
+  const folder = mkdtempSync(join(tmpdir(), 'fanlight-report-'))
+  const report = join(folder, 'report.json')
+  try {
+    return await timed(`tests: ${project}`, async () => {
+      const code = await run('vitest/vitest.mjs', ['run', '--project', project, '--passWithNoTests', '--reporter=default', '--reporter=json', `--outputFile.json=${report}`, ...words], {
+        env: { ...process.env, ...environment },
+        ...(started === undefined ? {} : { started }),
+      })
+      return countsOf(code, existsSync(report) ? JSON.parse(readFileSync(report, 'utf8')) : null)
+    }, counts => `${counts.passed} passed, ${counts.failed} failed`)
+  } finally {
+    rmSync(folder, { recursive: true, force: true })
   }
 }

@@ -1,11 +1,11 @@
-import { spawnSync } from 'node:child_process'
 import { createHash } from 'node:crypto'
 import { existsSync, mkdirSync, readFileSync, writeFileSync } from 'node:fs'
 import { join } from 'node:path'
 import { findPostgresPrograms } from '../../db/cluster/programs.mjs'
-import { say, step } from './say.mjs'
-
-export const root = join(import.meta.dirname, '..', '..')
+import { runChild } from './closing.mjs'
+import { alone } from './lock.mjs'
+import { artifactsFolder, root } from './places.mjs'
+import { step } from './say.mjs'
 
 /** @param {string} version of Node, such as "20.20.2" */
 export function nodeIsUsable(version) {
@@ -15,18 +15,46 @@ export function nodeIsUsable(version) {
 
 export function checkNode() {
   if (!nodeIsUsable(process.versions.node)) {
-    throw new Error(`Node ${process.versions.node} is too old or an odd one: install Node 20.19 or newer, or 22.12 or newer.`)
+    throw new Error(`Node ${process.versions.node} does not run Fanlight: install Node 20.19 or a newer 20, or 22.12 or newer.`)
   }
+}
+
+/**
+ * Whether node_modules holds what the lockfile says, by npm's own record of it.
+ *
+ * @param {{ packages: Record<string, { version?: string, optional?: boolean, link?: boolean }> }} lock
+ * @param {{ packages: Record<string, { version?: string }> } | null} installed
+ */
+export function isInstalled(lock, installed) {
+  if (installed === null) return false
+  const wanted = Object.entries(lock.packages).filter(([path]) => path !== '')
+  // Optional packages of other platforms are rightly missing, but none may be there in another version.
+  const matches = wanted.every(([path, facts]) => {
+    const found = installed.packages[path]
+    return found === undefined ? facts.optional === true : found.version === facts.version
+  })
+  return matches && Object.keys(installed.packages).every(path => path in lock.packages)
 }
 
 /** Installs npm packages from the lockfile when they are missing or the lockfile changed. */
 export async function installPackages() {
-  const stamp = join(root, 'node_modules', '.fanlight-lock')
-  const hash = createHash('sha256').update(readFileSync(join(root, 'package-lock.json'))).digest('hex')
-  if (existsSync(stamp) && readFileSync(stamp, 'utf8') === hash) return
-  await step('installing npm packages from the lockfile (about a minute)', () => {
-    const { status, stdout, stderr } = spawnSync('npm', ['ci', '--no-audit', '--no-fund'], { cwd: root, encoding: 'utf8' })
-    if (status !== 0) throw new Error(`npm ci failed:\n${stdout}\n${stderr}`)
+  const modules = join(root, 'node_modules')
+  const stamp = join(modules, '.fanlight-lock')
+  const text = readFileSync(join(root, 'package-lock.json'), 'utf8')
+  const hash = createHash('sha256').update(text).digest('hex')
+  const upToDate = () => existsSync(stamp) && readFileSync(stamp, 'utf8') === hash
+  if (upToDate()) return
+  mkdirSync(artifactsFolder, { recursive: true })
+  await alone(join(artifactsFolder, 'install.lock'), async () => {
+    if (upToDate()) return
+    const record = join(modules, '.package-lock.json')
+    // Somebody may have installed by hand; npm ci would only do the same again.
+    if (!isInstalled(JSON.parse(text), existsSync(record) ? JSON.parse(readFileSync(record, 'utf8')) : null)) {
+      await step('installing npm packages from the lockfile (about a minute)', async () => {
+        const { status, output } = await runChild('npm', ['ci', '--no-audit', '--no-fund', '--include=dev', '--include=optional'], { cwd: root })
+        if (status !== 0) throw new Error(`npm ci failed:\n${output}`)
+      })
+    }
     writeFileSync(stamp, hash)
   })
 }
@@ -35,33 +63,35 @@ function canInstallFromDebian() {
   return process.getuid?.() === 0 && existsSync('/usr/bin/apt-get')
 }
 
-function aptInstall(packages) {
-  const environment = { ...process.env, DEBIAN_FRONTEND: 'noninteractive' }
-  const install = () => spawnSync('apt-get', ['install', '-y', '--no-install-recommends', ...packages], { env: environment, encoding: 'utf8' })
-  let result = install()
+async function aptInstall(packages) {
+  const env = { ...process.env, DEBIAN_FRONTEND: 'noninteractive' }
+  // Broken off half-way the package system would ask for repair: it may take its time to end.
+  const apt = parameters => runChild('apt-get', ['-o', 'DPkg::Lock::Timeout=300', ...parameters], { env, hardAfterMilliseconds: 120_000 })
+  const install = () => apt(['install', '-y', '--no-install-recommends', ...packages])
+  let result = await install()
   if (result.status !== 0) {
     // A fresh machine has no list of packages yet, an old one a stale list.
-    spawnSync('apt-get', ['update'], { env: environment, encoding: 'utf8' })
-    result = install()
+    await apt(['update'])
+    result = await install()
   }
-  if (result.status !== 0) throw new Error(`apt-get could not install ${packages.join(' ')}:\n${result.stderr}`)
+  if (result.status !== 0) throw new Error(`apt-get could not install ${packages.join(' ')}:\n${result.output}`)
 }
 
 /** Makes sure of PostgreSQL's server programs. */
 export async function installPostgres() {
   if (findPostgresPrograms() !== null) return
-  const line = 'apt-get install --no-install-recommends postgresql-15'
   if (!canInstallFromDebian()) {
-    throw new Error(`PostgreSQL 15 or newer is missing. Install it with this line, or set DATABASE_URL:\n  sudo ${line}`)
+    throw new Error('PostgreSQL 15 or newer is missing. Install it with this line, or set DATABASE_URL:\n  sudo apt-get install --no-install-recommends postgresql')
   }
-  await step('installing PostgreSQL from Debian (about half a minute)', () => {
-    // Otherwise Debian makes and starts a cluster of its own on port 5432.
+  await step('installing PostgreSQL from Debian (about half a minute)', async () => {
+    // Otherwise Debian makes and starts a cluster of its own on port 5432. A file that is there is the owner's choice.
     if (!existsSync('/etc/postgresql-common/createcluster.conf')) {
       mkdirSync('/etc/postgresql-common', { recursive: true })
       writeFileSync('/etc/postgresql-common/createcluster.conf', 'create_main_cluster = false\n')
     }
-    aptInstall(['postgresql-15'])
+    await aptInstall(['postgresql-15'])
   })
+  if (findPostgresPrograms() === null) throw new Error('PostgreSQL was installed, yet its server programs are not found in /usr/lib/postgresql or on the PATH.')
 }
 
 /** @returns {string | null} path of a Chromium for browser tests */
@@ -77,5 +107,5 @@ export async function installChromium() {
   const line = 'apt-get install --no-install-recommends chromium'
   if (!canInstallFromDebian()) throw new Error(`Chromium is missing for the browser tests. Install it with this line, or set CHROMIUM_PATH:\n  sudo ${line}`)
   await step('installing Chromium from Debian (about half a minute)', () => aptInstall(['chromium']))
-  if (findChromium() === null) say('  Chromium is still not found.')
+  if (findChromium() === null) throw new Error('Chromium was installed, yet is not found in /usr/bin. Set CHROMIUM_PATH.')
 }

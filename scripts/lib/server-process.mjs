@@ -1,7 +1,9 @@
 import { spawn } from 'node:child_process'
-import { createWriteStream, readFileSync } from 'node:fs'
+import { appendFileSync } from 'node:fs'
 import { createInterface } from 'node:readline'
-import { root } from './install.mjs'
+import { beginLog } from '../../db/cluster/cluster.mjs'
+import { ClosingError, isClosing, whenClosing } from './closing.mjs'
+import { root } from './places.mjs'
 
 /**
  * Starts the server and waits until it says that it listens.
@@ -12,31 +14,41 @@ import { root } from './install.mjs'
  * @param {object} options
  * @param {Record<string, string>} options.environment
  * @param {string} options.logFile
- * @param {readonly string[]} [options.nodeOptions]
+ * @param {(pid: number) => void} options.started told the process number at once
  * @returns {Promise<{ child: import('node:child_process').ChildProcess, ready: { url: string, demo: { email: string, password: string, role: string }[] } }>}
  */
-export function startServer({ environment, logFile, nodeOptions = [] }) {
-  const child = spawn(process.execPath, [...nodeOptions, '--import', 'tsx', 'server/main.ts'], {
+export function startServer({ environment, logFile, started }) {
+  if (isClosing()) return Promise.reject(new ClosingError('closing'))
+  beginLog(logFile)
+  const child = spawn(process.execPath, ['--import', 'tsx', 'server/main.ts'], {
     cwd: root,
     env: { ...process.env, ...environment, FANLIGHT_ENDS_WITH_INPUT: 'yes' },
     stdio: ['pipe', 'pipe', 'pipe'],
     detached: true,
   })
-  const log = createWriteStream(logFile, { flags: 'a', mode: 0o600 })
-  child.stderr.pipe(log)
+  child.stdin.on('error', () => {})
+  if (child.pid !== undefined) started(child.pid)
+  const lastWords = []
+  const keep = line => {
+    appendFileSync(logFile, `${line}\n`)
+    lastWords.push(line)
+    if (lastWords.length > 8) lastWords.shift()
+  }
   return new Promise((resolve, reject) => {
-    const lines = createInterface({ input: child.stdout })
-    lines.on('line', line => {
-      if (line.startsWith('FANLIGHT_READY ')) resolve({ child, ready: JSON.parse(line.slice('FANLIGHT_READY '.length)) })
-      else log.write(`${line}\n`)
+    let ready = false
+    whenClosing(() => {
+      if (!ready) child.kill('SIGTERM')
+    })
+    createInterface({ input: child.stderr }).on('line', keep)
+    createInterface({ input: child.stdout }).on('line', line => {
+      if (!line.startsWith('FANLIGHT_READY ')) return keep(line)
+      ready = true
+      resolve({ child, ready: JSON.parse(line.slice('FANLIGHT_READY '.length)) })
     })
     child.once('error', reject)
-    child.once('exit', code => {
-      // The log's last words reach the file a moment later.
-      setTimeout(() => {
-        const end = readFileSync(logFile, 'utf8').trim().split('\n').slice(-8).join('\n')
-        reject(new Error(`The server ended by itself (code ${code}). Its log (${logFile}) ends with:\n${end}`))
-      }, 200)
+    // Not "exit": by then its last words may still be under way.
+    child.once('close', (code, signal) => {
+      reject(new Error(`The server ended by itself (${signal ?? `code ${code}`}). Its log (${logFile}) ends with:\n${lastWords.join('\n')}`))
     })
   })
 }

@@ -1,21 +1,27 @@
-import { rmSync } from 'node:fs'
+import { mkdtempSync, rmSync } from 'node:fs'
+import { join } from 'node:path'
 import { startCluster } from '../../db/cluster/cluster.mjs'
+import { closeLater } from './closing.mjs'
+import { startKeeper } from './keeper.mjs'
+import { temporaryFolder } from './places.mjs'
+import { step } from './say.mjs'
 
 /**
- * A PostgreSQL for tests and benchmarks, removed afterwards, whether they pass, fail or are broken off.
+ * A PostgreSQL for tests and benchmarks, removed when the script closes, whether they pass, fail or are broken off; its keeper
+ * also ends what the script started when the script is killed hard.
  *
- * @param {string} folder an empty folder of its own
+ * @returns {Promise<{ url: string, alsoEnd: (group: number) => void }>} alsoEnd: a process group that goes with it
  */
-export async function startThrowAwayCluster(folder) {
-  const cluster = await startCluster({ folder, durable: false })
-  let removed = false
-  const remove = () => {
-    if (removed) return
-    removed = true
-    cluster.stop()
+export async function startThrowAwayCluster() {
+  const folder = mkdtempSync(join(temporaryFolder(), 'fanlight-test-'))
+  const keeper = startKeeper()
+  keeper.tell('folder', folder)
+  closeLater(() => {
     rmSync(folder, { recursive: true, force: true })
-  }
-  process.once('exit', remove)
-  for (const signal of ['SIGINT', 'SIGTERM', 'SIGHUP']) process.once(signal, () => process.exit(1))
-  return { url: cluster.url, remove }
+    keeper.dismiss()
+  })
+  const cluster = await step('starting a PostgreSQL of our own', () => startCluster({ folder, durable: false }))
+  keeper.tell('postgres', cluster.pid)
+  closeLater(cluster.stop)
+  return { url: cluster.url, alsoEnd: group => keeper.tell('group', group) }
 }
