@@ -1,5 +1,5 @@
 import { useQueryClient } from '@tanstack/vue-query'
-import { computed, reactive, ref, shallowRef, toRaw, watch } from 'vue'
+import { computed, reactive, ref, shallowRef, toRaw, watch, type Ref } from 'vue'
 import type { z } from 'zod'
 import { ApiError } from '@/api/call.ts'
 
@@ -19,6 +19,20 @@ export interface FieldSpec {
 interface Versioned {
   readonly id: string
   readonly version: number
+}
+
+/** What a form on the screen needs to know of it, whatever the thing is. */
+export interface ThingFormState {
+  readonly values: Record<string, unknown>
+  readonly busy: Readonly<Ref<boolean>>
+  readonly error: Readonly<Ref<unknown>>
+  readonly stale: Readonly<Ref<object | null>>
+  readonly touched: Readonly<Ref<boolean>>
+  changed(): void
+  save(): Promise<{ readonly id: string } | null>
+  keepMine(): Promise<{ readonly id: string } | null>
+  takeCurrent(): void
+  errorOf(name: string): string | undefined
 }
 
 interface Options<T extends Versioned> {
