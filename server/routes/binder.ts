@@ -102,6 +102,12 @@ export class Binder {
     })
   }
 
+  /** @throws {Error} with the names of operations that the contracts promise and nobody implements */
+  checkComplete(operations: readonly Operation[]): void {
+    const missing = operations.filter(operation => !this.implemented.has(operation.id)).map(operation => operation.id)
+    if (missing.length > 0) throw new Error(`not implemented: ${missing.join(', ')}`)
+  }
+
   /** For operations under /api/shops/:shopId: the actor is a member with one of the table's roles. */
   implementInShop<O extends Operation>(operation: O, handler: ShopHandler<O>): void {
     const rights = access[operation.id]
