@@ -4,7 +4,7 @@ import { afterAll, beforeAll, beforeEach, describe, expect, it } from 'vitest'
 import { z } from 'zod'
 import { eq } from 'drizzle-orm'
 import { study } from '#db/schema/index.ts'
-import { filmReadingSchema, type FilmReadingSave } from '#shared/contracts/film.ts'
+import { filmReadingSchema, getFilmFit, type FilmReadingSave } from '#shared/contracts/film.ts'
 import { importFilmReadings } from '#shared/contracts/film-imports.ts'
 import { filmSettingsSchema } from '#shared/contracts/studies.ts'
 import { exposureForDepth, fitWorkingCurve, type WorkingCurveOptions } from '#shared/film/index.ts'
@@ -126,6 +126,15 @@ describe('the fit as CSV', () => {
     await save(cell())
     const rows = table((await get('film-fit.csv')).text)
     expect(rows[0]).toMatchObject({ quantity: 'refused', remark: expect.stringContaining('one-film') })
+  })
+})
+
+describe('the fit as the server makes it', () => {
+  it('is the one that the exports carry', async () => {
+    await save(...films())
+    const fit = getFilmFit.response?.parse(JSON.parse((await get('film-fit')).text))
+    const exported = JSON.parse((await get('film.json')).text)
+    expect(fit).toEqual({ inputsHash: exported.fit.inputsHash, libraryVersion: exported.fit.libraryVersion, outcome: exported.fit.outcome })
   })
 })
 
