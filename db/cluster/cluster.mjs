@@ -59,6 +59,11 @@ export function makePrivateFolder(folder) {
   chmodSync(folder, unprivilegedAccount() === null ? 0o700 : 0o711)
 }
 
+/** @param {string} folder of a cluster */
+export function dataFolderIn(folder) {
+  return join(folder, 'postgres')
+}
+
 /** A log that grew is kept once under another name. */
 export function beginLog(path) {
   if (existsSync(path) && statSync(path).size > logBytesMax) renameSync(path, `${path}.before`)
@@ -74,7 +79,7 @@ export function beginLog(path) {
  * @returns {Promise<Cluster>}
  */
 export async function startCluster({ folder, durable }) {
-  const dataFolder = join(folder, 'postgres')
+  const dataFolder = dataFolderIn(folder)
   const created = !existsSync(join(dataFolder, 'PG_VERSION'))
   const programs = programsFor(created ? null : dataFolder)
   const account = unprivilegedAccount()

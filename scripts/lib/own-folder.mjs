@@ -2,7 +2,7 @@ import { randomBytes } from 'node:crypto'
 import { existsSync, readFileSync, writeFileSync } from 'node:fs'
 import { join } from 'node:path'
 import { setTimeout as wait } from 'node:timers/promises'
-import { makePrivateFolder, startCluster } from '../../db/cluster/cluster.mjs'
+import { dataFolderIn, makePrivateFolder, startCluster } from '../../db/cluster/cluster.mjs'
 import { isAlive } from '../../db/cluster/postmaster.mjs'
 import { close, closeLater, isClosing } from './closing.mjs'
 import { installPostgres } from './install.mjs'
@@ -19,7 +19,8 @@ import { step } from './say.mjs'
 export async function takeDataFolder() {
   const folder = dataFolder()
   makePrivateFolder(folder)
-  const lock = takeLock(join(folder, 'running.json'))
+  const lockFile = join(folder, 'running.json')
+  const lock = takeLock(lockFile)
   if (lock.kind === 'held') {
     const { address, pid } = lock.facts
     throw new Error(typeof address === 'string'
@@ -29,6 +30,7 @@ export async function takeDataFolder() {
   closeLater(lock.release)
   const keeper = startKeeper()
   closeLater(keeper.dismiss)
+  keeper.tell('lock', lockFile)
   await endFormerServer(lock.former?.server)
   const facts = {}
   const note = more => lock.note(Object.assign(facts, more))
@@ -60,6 +62,7 @@ export async function openDatabase({ folder, keeper }) {
   const given = process.env.DATABASE_URL
   if (given !== undefined && given !== '') return given
   await installPostgres()
+  keeper?.tell('cluster', dataFolderIn(folder))
   const cluster = await step('starting PostgreSQL', () => startCluster({ folder, durable: true }))
   keeper?.tell('postgres', cluster.pid)
   const watch = setInterval(() => {

@@ -1,6 +1,6 @@
 import { mkdtempSync, rmSync } from 'node:fs'
 import { join } from 'node:path'
-import { startCluster } from '../../db/cluster/cluster.mjs'
+import { dataFolderIn, startCluster } from '../../db/cluster/cluster.mjs'
 import { closeLater } from './closing.mjs'
 import { startKeeper } from './keeper.mjs'
 import { temporaryFolder } from './places.mjs'
@@ -16,6 +16,7 @@ export async function startThrowAwayCluster() {
   const folder = mkdtempSync(join(temporaryFolder(), 'fanlight-test-'))
   const keeper = startKeeper()
   keeper.tell('folder', folder)
+  keeper.tell('cluster', dataFolderIn(folder))
   closeLater(() => {
     rmSync(folder, { recursive: true, force: true })
     keeper.dismiss()
