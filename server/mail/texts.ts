@@ -1,8 +1,8 @@
 import type { Role } from '#shared/contracts/common.ts'
 import type { Mail } from '../dependencies.ts'
 
-/** Names come from people: a line break in one must not become a header or a line of ours. */
-const oneLine = (text: string): string => text.replace(/[\r\n\u2028\u2029\0]+/g, ' ').slice(0, 120)
+/** Names come from strangers: none may become a header, a line or a link of our mail. */
+const oneLine = (text: string): string => text.replace(/[\p{Cc}\p{Zl}\p{Zp}]+/gu, ' ').replaceAll('://', ' ').slice(0, 120)
 
 const closing = '\n\nIf you did not ask for this, do nothing: without the link nothing happens.\n\nFanlight'
 
