@@ -1,17 +1,11 @@
-import { createHmac, randomBytes } from 'node:crypto'
-import { createServer, type Server } from 'node:http'
-import { pino } from 'pino'
 import { v7 } from 'uuid'
-import { membership, pairing, printer, resin, session, shop, study, user } from '#db/schema/index.ts'
-import { createApp } from '#server/app.ts'
-import { readConfig } from '#server/config.ts'
+import { membership, pairing, printer, resin, shop, study } from '#db/schema/index.ts'
 import type { Role } from '#shared/contracts/common.ts'
 import type { FilmReadingSave } from '#shared/contracts/film.ts'
 import type { FilmImportMapping } from '#shared/contracts/film-imports.ts'
+import { getSession, sessionSchema, signIn as signInOperation } from '#shared/contracts/session.ts'
 import { defaultFilmSettings } from '#shared/contracts/studies.ts'
-import { createTestDatabase } from './test-database.ts'
-
-const secret = 'a secret for tests, thirty-two characters long'
+import { startTestApp, testPassword } from './test-app.ts'
 
 interface Sent {
   readonly body?: unknown
@@ -29,14 +23,8 @@ export interface FilmClient {
 
 /** A listening server with one shop, one pairing and one study in seconds. */
 export async function startFilmShop() {
-  const { database: db, pool, url, drop } = await createTestDatabase()
-  const config = readConfig({ DATABASE_URL: url, NODE_ENV: 'test', SESSION_SECRET: secret, LOG_LEVEL: 'silent' })
-  const app = createApp({
-    config, database: db, pool, logger: pino({ level: process.env.FILM_LOG ?? 'silent' }),
-    mailQueue: { enqueue: async () => {} }, mailbox: null, demoSignIns: [], clock: () => new Date(), newId: () => v7(),
-  })
-  const server: Server = createServer(app)
-  await new Promise<void>(resolve => server.listen(0, '127.0.0.1', resolve))
+  const app = await startTestApp()
+  const { database: db, pool, server } = app
   const address = server.address()
   if (address === null || typeof address === 'string') throw new Error('the server does not listen on a port')
   const baseUrl = `http://127.0.0.1:${address.port}`
@@ -60,18 +48,25 @@ export async function startFilmShop() {
     return { shopId: ids.shopId, studyId, path: `/api/shops/${ids.shopId}/studies/${studyId}` }
   }
 
-  /** Signs a new member in, as the session middleware would have stored it. */
+  /** A new member, signed in: with fetch rather than an agent, because files are streamed. */
   async function signIn(shopId: string, role: Role, displayName = `The ${role}`): Promise<FilmClient> {
-    const userId = v7()
-    await db.insert(user).values({ id: userId, email: `${userId}@quillmere.example`, displayName, passwordHash: 'none' })
+    const { userId, email } = await app.makePerson(displayName)
     await db.insert(membership).values({ shopId, userId, role })
-    const sid = randomBytes(24).toString('base64url')
-    const expire = new Date(Date.now() + 86_400_000)
-    await db.insert(session).values({ sid, sess: { cookie: { expires: expire.toISOString(), originalMaxAge: 86_400_000, httpOnly: true, path: '/' }, userId, touchedOn: new Date().toISOString().slice(0, 10) }, expire })
-    const signature = createHmac('sha256', secret).update(sid).digest('base64').replace(/=+$/, '')
-    const csrfCookie = randomBytes(32).toString('hex')
-    const csrfToken = createHmac('sha256', secret).update(`csrf:${csrfCookie}:${sid}`).digest('hex')
-    const sessionHeaders = { Cookie: `fanlight.sid=${encodeURIComponent(`s:${sid}.${signature}`)}; fanlight.csrf=${csrfCookie}`, 'X-CSRF-Token': csrfToken }
+    const cookies = new Map<string, string>()
+    let csrfToken = ''
+    const headersNow = () => ({ Cookie: [...cookies].map(([name, value]) => `${name}=${value}`).join('; '), 'X-CSRF-Token': csrfToken })
+    const take = async (response: Response) => {
+      for (const line of response.headers.getSetCookie()) {
+        const [, name = '', value = ''] = /^([^=]+)=([^;]*)/.exec(line) ?? []
+        cookies.set(name, value)
+      }
+      csrfToken = sessionSchema.parse(await response.json()).csrfToken
+    }
+    await take(await fetch(`${baseUrl}${getSession.path}`))
+    await take(await fetch(`${baseUrl}${signInOperation.path}`, {
+      method: signInOperation.method.toUpperCase(), headers: { ...headersNow(), 'Content-Type': 'application/json' }, body: JSON.stringify({ email, password: testPassword }),
+    }))
+    const sessionHeaders = headersNow()
     return {
       userId,
       headers: sessionHeaders,
@@ -91,12 +86,8 @@ export async function startFilmShop() {
   }
 
   return {
-    baseUrl, db, pool, databaseUrl: url, makeShop, makeStudy, signIn,
-    async close() {
-      server.closeAllConnections()
-      await new Promise(resolve => server.close(resolve))
-      await drop()
-    },
+    baseUrl, db, pool, databaseUrl: app.url, makeShop, makeStudy, signIn,
+    close: () => app.close(),
   }
 }
 export type FilmShop = Awaited<ReturnType<typeof startFilmShop>>
