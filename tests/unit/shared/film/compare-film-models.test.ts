@@ -51,6 +51,16 @@ describe('compareFilmModels', () => {
     expect(comparison.preferred).toBe('straight-line')
   })
 
+  it('keeps the straight line for six films, however sure the bend: three parameters cost too much there', () => {
+    const comparison = compareFilmModels({ readings: bent(14).slice(0, 6), exposureKind: 'mJ/cm2', depthMicrometres: 80 })
+    if (comparison.kind === 'refused') throw new Error(comparison.detail)
+    const quadratic = comparison.models.find(one => one.model === 'quadratic')
+    if (quadratic?.kind !== 'compared' || quadratic.test === null) throw new Error('compared')
+    expect(quadratic.test.pValue).toBeLessThan(0.01)
+    expect(quadratic.aiccChange).toBeGreaterThan(0)
+    expect(comparison.preferred).toBe('straight-line')
+  })
+
   it('passes on the refusal of films that tell no line', () => {
     expect(compareFilmModels({ readings: [], exposureKind: 'seconds', depthMicrometres: 100 })).toMatchObject({ kind: 'refused', reason: 'no-films' })
   })

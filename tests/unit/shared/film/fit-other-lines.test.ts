@@ -121,6 +121,17 @@ describe('fitCensoredWorkingCurve', () => {
     expect(withIt.criticalExposure.interval.lower).toBeGreaterThan(without.criticalExposure.interval.lower)
   })
 
+  it('learns nothing from a film that could not have formed: values and intervals stay', () => {
+    const without = fittedOnly(fitCensoredWorkingCurve({ readings, exposureKind: 'mJ/cm2', limitMicrometres: 15 }))
+    const withIt = fittedOnly(fitCensoredWorkingCurve({ readings: [missing(0.1), ...readings], exposureKind: 'mJ/cm2', limitMicrometres: 15 }))
+    for (const part of ['penetrationDepthMicrometres', 'criticalExposure'] as const) {
+      const [own, other] = [withIt[part].interval, without[part].interval]
+      if (own.kind !== 'finite' || other.kind !== 'finite') throw new Error('finite')
+      expect(own.lower / other.lower).toBeCloseTo(1, 6)
+      expect(own.upper / other.upper).toBeCloseTo(1, 6)
+    }
+  })
+
   it('counts a film once: repeated readings that are missing, or one of which was measured', () => {
     const twice: FilmReading[] = [{ ...missing(7), filmId: 'a' }, { ...missing(7), filmId: 'a' }, { ...missing(7), filmId: 'b' }]
     const fit = fittedOnly(fitCensoredWorkingCurve({ readings: [...readings, ...twice], exposureKind: 'mJ/cm2', limitMicrometres: 15 }))

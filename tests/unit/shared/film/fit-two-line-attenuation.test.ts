@@ -1,5 +1,6 @@
 import { describe, expect, it } from 'vitest'
 import { fitTwoLineAttenuation, modelDepthAt, modelExposureForDepth } from '#shared/film/index.ts'
+import { fitNonlinear } from '#shared/stats/index.ts'
 import { twoLineDepth, twoLineGradient, twoLineParts } from '../../../../shared/film/two-line-depth.ts'
 import { fittedOnly, measured, scatterMicrometres } from './readings.ts'
 
@@ -30,6 +31,31 @@ describe('fitTwoLineAttenuation', () => {
     }
     expect(given.criticalExposure.standardError).toBeLessThan(free.criticalExposure.standardError)
     expect(given.shallowShare.standardError).toBe(0)
+  })
+
+  it('has the standard errors of the same curve fitted in Ec, D1 and D2 themselves', () => {
+    const fit = fittedOnly(fitTwoLineAttenuation({ readings: scattered, exposureKind: 'mJ/cm2', shallowShare: 0.5 }))
+    const direct = fitNonlinear({
+      x: scattered.map(reading => Math.log(reading.exposure)),
+      y: scattered.map(reading => reading.depthMicrometres),
+      model: ([critical = 1, shallow = 1, deep = 1]) => logExposure => {
+        let [low, high] = [-500, 2000]
+        for (let i = 0; i < 80; i++) {
+          const middle = (low + high) / 2
+          const left = Math.exp(logExposure) * (0.5 * Math.exp(-middle / shallow) + 0.5 * Math.exp(-middle / deep))
+          if (left > critical) low = middle
+          else high = middle
+        }
+        return (low + high) / 2
+      },
+      starts: [[1, 50, 200]],
+    })
+    if (direct.kind === 'refused') throw new Error(direct.detail)
+    const own = [fit.criticalExposure, ...fit.penetrationDepthsMicrometres]
+    for (const [k, estimate] of own.entries()) {
+      expect(estimate.value / (direct.parameters[k] ?? Number.NaN)).toBeCloseTo(1, 5)
+      expect(estimate.standardError / (direct.standardErrors[k] ?? Number.NaN)).toBeCloseTo(1, 4)
+    }
   })
 
   it('answers depths and exposures that undo each other, with the interval around', () => {

@@ -47,6 +47,17 @@ describe('fitNonlinear', () => {
     }
   })
 
+  it.each([0, 1, 2])('holds parameter %i as well with derivatives by formula', heldIndex => {
+    const jacobian = ([height = 0, rate = 0]: readonly number[]) => (at: number) =>
+      [Math.exp(-rate * at), -height * at * Math.exp(-rate * at), 1]
+    const common = { x, y, model: decay, starts: [[3, 0.3, 0.8]], held: truth.map((_, index) => index === heldIndex) }
+    const [plain, exact] = [fitted(common), fitted({ ...common, jacobian })]
+    for (const k of [0, 1, 2]) {
+      expect(exact.parameters[k]).toBeCloseTo(plain.parameters[k] ?? Number.NaN, 7)
+      expect(exact.standardErrors[k]).toBeCloseTo(plain.standardErrors[k] ?? Number.NaN, 7)
+    }
+  })
+
   it('holds two of three and agrees with the model written without them', () => {
     const fit = fitted({ x, y, model: decay, starts: [[4, 0.3, 1]], held: [true, false, true] })
     const alone = fitted({ x, y, model: ([rate = 0]) => decay([4, rate, 1]), starts: [[0.3]] })
@@ -99,6 +110,14 @@ describe('fitNonlinear', () => {
 
   it('refuses a curve that wants its parameter at infinity', () => {
     const outcome = fitNonlinear({ x, y: x.map(at => -at), model: ([a = 0]) => at => Math.exp(a) * at, starts: [[0]] })
+    expect(outcome.kind).toBe('refused')
+  })
+
+  it('refuses a rate that may be anything above a size, because every point has levelled off', () => {
+    const outcome = fitNonlinear({
+      x, y: [5, 5.1, 4.9, 5.05, 4.95, 5.02, 4.98],
+      model: ([top = 0, rate = 0]) => at => top * (1 - Math.exp(-rate * at)), starts: [[5, 30], [5, 60]],
+    })
     expect(outcome.kind).toBe('refused')
   })
 
