@@ -1,4 +1,4 @@
-import { existsSync, readFileSync, readdirSync, readlinkSync, rmSync } from 'node:fs'
+import { existsSync, readFileSync, readdirSync, readlinkSync, rmSync, statSync } from 'node:fs'
 import { join } from 'node:path'
 import { setTimeout as wait } from 'node:timers/promises'
 
@@ -7,6 +7,7 @@ import { setTimeout as wait } from 'node:timers/promises'
  *
  * @typedef {object} ProcessFacts
  * @property {number} pid
+ * @property {number} uid whose it is
  * @property {readonly string[]} words its command line; PostgreSQL's workers have one word, "postgres: checkpointer"
  * @property {string | null} folder where it stands; null when we may not know
  */
@@ -17,7 +18,7 @@ export function processTable() {
   return readdirSync('/proc').filter(name => /^\d+$/.test(name)).flatMap(name => {
     try {
       const words = readFileSync(`/proc/${name}/cmdline`, 'utf8').split('\0').filter(word => word !== '')
-      return [{ pid: Number(name), words, folder: folderOf(name) }]
+      return [{ pid: Number(name), uid: statSync(`/proc/${name}`).uid, words, folder: folderOf(name) }]
     } catch {
       return [] // Ended between the list and the look.
     }
@@ -41,13 +42,14 @@ function folderOf(pid) {
  *
  * @param {string} dataFolder
  * @param {number | null} pidInFile first line of postmaster.pid
+ * @param {number} owner uid of the data folder; PostgreSQL runs only as its owner
  * @param {readonly ProcessFacts[]} table
  * @returns {{ kind: 'runs', pid: number } | { kind: 'orphans', pids: number[] } | { kind: 'nobody' } | { kind: 'unclear' }}
  *   orphans are workers whose postmaster was killed: they end by themselves, and nobody may start here before; unclear where
  *   workers run whose folder we may not see (root in a container)
  */
-export function whoWorksOn(dataFolder, pidInFile, table) {
-  const isPostgres = facts => /(^|\/)postgres(:|$)/.test(facts.words[0] ?? '')
+export function whoWorksOn(dataFolder, pidInFile, owner, table) {
+  const isPostgres = facts => facts.uid === owner && /(^|\/)postgres(:|$)/.test(facts.words[0] ?? '')
   const master = table.find(facts => facts.pid === pidInFile && isPostgres(facts) && (facts.words.includes(dataFolder) || facts.folder === dataFolder))
   if (master !== undefined) return { kind: 'runs', pid: master.pid }
   const pids = table.filter(facts => isPostgres(facts) && facts.folder === dataFolder).map(facts => facts.pid)
@@ -65,6 +67,12 @@ function pidIn(dataFolder) {
   }
 }
 
+/** @param {string} dataFolder */
+function look(dataFolder) {
+  if (!existsSync(dataFolder)) return { kind: 'nobody' }
+  return whoWorksOn(dataFolder, pidIn(dataFolder), statSync(dataFolder).uid, processTable())
+}
+
 /**
  * The pid of the PostgreSQL that runs on this data folder.
  *
@@ -72,7 +80,7 @@ function pidIn(dataFolder) {
  * @returns {number | null}
  */
 export function runningPostgres(dataFolder) {
-  const found = whoWorksOn(dataFolder, pidIn(dataFolder), processTable())
+  const found = look(dataFolder)
   return found.kind === 'runs' ? found.pid : null
 }
 
@@ -94,7 +102,7 @@ export function isAlive(pid) {
  */
 export async function clearAfterHardEnd(dataFolder) {
   for (let attempt = 0; attempt < 50; attempt++) {
-    const found = whoWorksOn(dataFolder, pidIn(dataFolder), processTable())
+    const found = look(dataFolder)
     // Unclear: the file stays, and PostgreSQL's own check of its shared memory decides.
     if (found.kind === 'runs' || found.kind === 'unclear') return
     if (found.kind === 'nobody') {
