@@ -12,7 +12,7 @@ const soonDays = 30
 const day = 86_400_000
 
 /** What a shop knows of each pairing, and what waits for somebody, most urgent first. */
-export async function benchOf(dependencies: Dependencies, actor: ShopActor): Promise<Bench> {
+export async function benchOf(dependencies: Pick<Dependencies, 'database' | 'clock'>, actor: ShopActor): Promise<Bench> {
   const facts = await readBench(dependencies.database, actor.shopId)
   const readingsOf = groupBy(facts.readings, reading => reading.studyId)
   const printerOf = new Map(facts.printers.map(printer => [printer.id, printer]))
@@ -43,15 +43,24 @@ export async function benchOf(dependencies: Dependencies, actor: ShopActor): Pro
 
 const urgency: readonly Attention['kind'][] = ['lot-expired', 'films-to-measure', 'film-fit-doubtful', 'films-to-print', 'decide', 'lot-expires-soon', 'no-study-yet']
 
+/** A plan asks for several films of one exposure: each film that is there answers for one of them. */
+function countFilmsToCome(film: StudyFacts['film'], readings: readonly { readonly exposure: number }[]): number {
+  const there = new Map<number, number>()
+  for (const { exposure } of readings) there.set(exposure, (there.get(exposure) ?? 0) + 1)
+  return (film.plan?.exposures ?? []).filter(exposure => {
+    const left = there.get(exposure) ?? 0
+    if (film.columnsAre === 'films') there.set(exposure, left - 1)
+    return left <= 0
+  }).length
+}
+
 function summarise(study: StudyFacts, readings: readonly Facts['readings'][number][], stepSeconds: number): BenchStudy {
   const outcome = fitWorkingCurve(filmFitInputs(study, readings.map(reading => ({ ...reading, id: '' }))))
-  const entered = new Set(readings.map(reading => reading.exposure))
-  const planned = study.film.plan?.exposures ?? []
   const base = {
     id: study.id, name: study.name, state: study.state, layerHeightMicrometres: study.layerHeightMicrometres, lotCode: study.lotCode,
     exposureKind: study.exposureKind, updatedAt: study.updatedAt,
     filmsMeasured: study.readingCount,
-    filmsPlanned: planned.filter(exposure => !entered.has(exposure)).length,
+    filmsPlanned: countFilmsToCome(study.film, readings),
   }
   if (readings.length === 0) return { ...base, film: { kind: 'none' } }
   if (outcome.kind === 'refused') return { ...base, film: { kind: 'refused', detail: outcome.detail } }

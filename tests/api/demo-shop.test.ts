@@ -11,6 +11,8 @@ import { filmReadingSaveSchema } from '#shared/contracts/film.ts'
 import { filmSettingsSchema } from '#shared/contracts/studies.ts'
 import { fitWorkingCurve } from '#shared/film/index.ts'
 import { guessFilmImportMapping, readFilmRow } from '#shared/imports/index.ts'
+import { benchSchema } from '#shared/contracts/bench.ts'
+import { benchOf } from '#server/services/bench.ts'
 import { createTestDatabase, type TestDatabase } from '#tests/helpers/test-database.ts'
 
 const now = new Date('2026-03-10T09:00:00Z')
@@ -92,6 +94,12 @@ describe('the demo shop', () => {
       planned.splice(planned.indexOf(film.exposure), 1)
     }
     expect(planned).toHaveLength(3)
+    // The second films of two exposures are still to come, and the bench says so.
+    const [shopRow] = await test.database.select({ id: shop.id }).from(shop)
+    const { pairings, attention } = benchSchema.parse(await benchOf({ database: test.database, clock: () => now }, { userId: v7(), displayName: '', email: '', role: 'owner', shopId: shopRow?.id ?? '' }))
+    const summary = pairings.flatMap(shown => shown.studies).find(shown => shown.name === 'Model sand at 25 µm')
+    expect(summary).toMatchObject({ filmsMeasured: 4, filmsPlanned: 3 })
+    expect(attention.map(item => item.kind)).toEqual(expect.arrayContaining(['films-to-measure', 'film-fit-doubtful', 'lot-expires-soon', 'no-study-yet']))
   })
 
   it('has the films of fixtures/data/south-bench-films.csv, as its import would have read them', async () => {
