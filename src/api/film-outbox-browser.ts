@@ -37,12 +37,41 @@ function browserStore(): OutboxStore {
   }
 }
 
+/** A browser that keeps nothing (private windows of some) still holds the cells while the page stands. */
+function withMemory(kept: OutboxStore): OutboxStore & { readonly keepsNothing: () => boolean } {
+  const memory = new Map<string, OutboxEntry>()
+  let broken = false
+  return {
+    keepsNothing: () => broken,
+    all: async () => {
+      const stored = broken ? [] : await kept.all().catch(() => { broken = true; return [] })
+      return [...stored, ...memory.values()]
+    },
+    update: async (key, change) => {
+      if (!broken) {
+        try {
+          await kept.update(key, change)
+          return
+        } catch {
+          broken = true
+        }
+      }
+      const next = change(memory.get(key))
+      if (next === undefined) memory.delete(key)
+      else memory.set(key, next)
+    },
+  }
+}
+
+const store = withMemory(browserStore())
+export const browserKeepsNothing = store.keepsNothing
+
 /** Tells other tabs that the outbox changed. */
 export const outboxChannelName = 'fanlight-film-outbox'
 
 /** The outbox of this browser: IndexedDB keeps it, a Web Lock keeps two tabs from sending the same cell. */
 export const filmOutbox = createFilmOutbox({
-  store: browserStore(),
+  store,
   send: ({ shopId, studyId }, readings) => call(saveFilmReadings, { params: { shopId, studyId }, body: { readings: [...readings] } }),
   alone: async run => {
     if (navigator.locks === undefined) return run()

@@ -35,18 +35,24 @@ export interface OutboxStore {
 
 export interface OutboxDependencies {
   readonly store: OutboxStore
-  readonly send: (place: { shopId: string; studyId: string }, readings: readonly FilmReadingSave[]) => Promise<{ readonly results: readonly FilmReadingSaved[] }>
+  readonly send: (place: { shopId: string; studyId: string }, readings: readonly FilmReadingSave[]) => Promise<{ readonly results: readonly FilmReadingSaved[]; readonly readingsRevision: number }>
   /** Runs alone among all tabs; answers null when another tab is at it. */
   readonly alone: <T>(run: () => Promise<T>) => Promise<T | null>
   readonly newId: () => string
   readonly now: () => number
 }
 
+/** One answered sending: where the study's readings stand after it. */
+export interface SentRevision {
+  readonly studyId: string
+  readonly readingsRevision: number
+}
+
 export type FlushOutcome =
-  | { readonly kind: 'sent'; readonly saved: readonly FilmReadingSaved[] }
+  | { readonly kind: 'sent'; readonly saved: readonly FilmReadingSaved[]; readonly revisions: readonly SentRevision[] }
   /** Another tab is sending: its answers come through the store. */
   | { readonly kind: 'elsewhere' }
-  | { readonly kind: 'offline' | 'signed-out' | 'later'; readonly saved: readonly FilmReadingSaved[]; readonly sentence: string }
+  | { readonly kind: 'offline' | 'signed-out' | 'later'; readonly saved: readonly FilmReadingSaved[]; readonly revisions: readonly SentRevision[]; readonly sentence: string }
 
 export interface Typed {
   readonly userId: string
@@ -92,11 +98,12 @@ export function createFilmOutbox({ store, send, alone, newId, now }: OutboxDepen
     })
   }
 
-  async function sendChunk(entries: readonly OutboxEntry[]): Promise<readonly FilmReadingSaved[]> {
+  async function sendChunk(entries: readonly OutboxEntry[], revisions: SentRevision[]): Promise<readonly FilmReadingSaved[]> {
     const [first] = entries
     if (first === undefined) return []
     try {
-      const { results } = await send(first, entries.map(entry => entry.save))
+      const { results, readingsRevision } = await send(first, entries.map(entry => entry.save))
+      revisions.push({ studyId: first.studyId, readingsRevision })
       const byId = new Map(results.map(result => [result.id, result]))
       for (const entry of entries) {
         const result = byId.get(entry.save.id)
@@ -108,7 +115,7 @@ export function createFilmOutbox({ store, send, alone, newId, now }: OutboxDepen
       // One cell must not hold back the others: find it by sending each alone.
       if (entries.length > 1) {
         const saved: FilmReadingSaved[] = []
-        for (const entry of entries) saved.push(...(await sendChunk([entry])))
+        for (const entry of entries) saved.push(...(await sendChunk([entry], revisions)))
         return saved
       }
       await store.update(entryKey(first), old => (old?.edit === first.edit ? { ...old, status: { kind: 'refused', sentence: error.problem.detail } } : old))
@@ -120,18 +127,19 @@ export function createFilmOutbox({ store, send, alone, newId, now }: OutboxDepen
   async function flush(userId: string): Promise<FlushOutcome> {
     const outcome = await alone(async (): Promise<FlushOutcome> => {
       const saved: FilmReadingSaved[] = []
+      const revisions: SentRevision[] = []
       try {
         // Once around again: what was typed while sending goes out too.
         for (let round = 0; round < 5; round++) {
           const waiting = (await store.all()).filter(entry => entry.userId === userId && entry.status.kind === 'waiting')
           if (waiting.length === 0) break
-          for (const chunk of chunks(waiting)) saved.push(...(await sendChunk(chunk)))
+          for (const chunk of chunks(waiting)) saved.push(...(await sendChunk(chunk, revisions)))
         }
-        return { kind: 'sent', saved }
+        return { kind: 'sent', saved, revisions }
       } catch (error) {
-        if (error instanceof OfflineError) return { kind: 'offline', saved, sentence: error.message }
-        if (error instanceof ApiError && error.problem.status === 401) return { kind: 'signed-out', saved, sentence: error.problem.detail }
-        return { kind: 'later', saved, sentence: error instanceof ApiError ? error.problem.detail : 'The answer could not be read.' }
+        if (error instanceof OfflineError) return { kind: 'offline', saved, revisions, sentence: error.message }
+        if (error instanceof ApiError && error.problem.status === 401) return { kind: 'signed-out', saved, revisions, sentence: error.problem.detail }
+        return { kind: 'later', saved, revisions, sentence: error instanceof ApiError ? error.problem.detail : 'The answer could not be read.' }
       }
     })
     return outcome ?? { kind: 'elsewhere' }

@@ -30,7 +30,7 @@ function memoryStore(): OutboxStore & { readonly entries: Map<string, OutboxEntr
 }
 
 type Send = OutboxDependencies['send']
-const saveAll: Send = async (_place, readings) => ({ results: readings.map(reading => ({ kind: 'saved', id: reading.id, reading: stored(reading) })) })
+const saveAll: Send = async (_place, readings) => ({ results: readings.map(reading => ({ kind: 'saved', id: reading.id, reading: stored(reading) })), readingsRevision: 1 })
 
 function setUp(send: Send, store = memoryStore()) {
   let n = 0
@@ -109,7 +109,7 @@ describe('film outbox', () => {
       sent.push(...readings)
       if (!first) return saveAll(at, readings)
       first = false
-      return { results: readings.map((reading): FilmReadingSaved => ({ kind: 'stale', id: reading.id, current, currentVersion: 4 })) }
+      return { results: readings.map((reading): FilmReadingSaved => ({ kind: 'stale', id: reading.id, current, currentVersion: 4 })), readingsRevision: 1 }
     })
     await outbox.put({ ...place, save: save(1) })
     await outbox.flush(userId)
@@ -131,7 +131,7 @@ describe('film outbox', () => {
       sent.push(...readings)
       if (!first) return saveAll(at, readings)
       first = false
-      return { results: readings.map((reading): FilmReadingSaved => ({ kind: 'stale', id: reading.id, current: null, currentVersion: 0 })) }
+      return { results: readings.map((reading): FilmReadingSaved => ({ kind: 'stale', id: reading.id, current: null, currentVersion: 0 })), readingsRevision: 1 }
     })
     await outbox.put({ ...place, save: save(1, 85, { baseVersion: 2 }) })
     await outbox.flush(userId)
