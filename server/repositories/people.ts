@@ -3,6 +3,7 @@ import { invitation, membership, passwordReset, session, shop, signUp, user } fr
 import type { Role } from '#shared/contracts/common.ts'
 import type { Membership } from '#shared/contracts/session.ts'
 import type { Executor } from '../dependencies.ts'
+import { preparedOnce } from './prepared.ts'
 
 export interface UserRow {
   readonly id: string
@@ -11,6 +12,14 @@ export interface UserRow {
   readonly passwordHash: string
 }
 
+const signedInStatement = preparedOnce(database =>
+  database
+    .select({ displayName: user.displayName, email: user.email, role: membership.role })
+    .from(user)
+    .leftJoin(membership, and(eq(membership.userId, user.id), eq(membership.shopId, sql.placeholder('shopId'))))
+    .where(eq(user.id, sql.placeholder('userId')))
+    .prepare('read_signed_in'))
+
 /** One statement for each signed-in call: the person, and their role in the named shop. */
 export async function readUserWithMembership(
   database: Executor,
@@ -18,11 +27,8 @@ export async function readUserWithMembership(
   shopId: string | null,
 ): Promise<{ displayName: string; email: string; role: Role | null } | null> {
   const known = shopId !== null && /^[0-9a-f]{8}(-[0-9a-f]{4}){3}-[0-9a-f]{12}$/i.test(shopId)
-  const [row] = await database
-    .select({ displayName: user.displayName, email: user.email, role: membership.role })
-    .from(user)
-    .leftJoin(membership, and(eq(membership.userId, user.id), known ? eq(membership.shopId, shopId) : sql`false`))
-    .where(eq(user.id, userId))
+  // Nothing equals null: without a shop there is no role.
+  const [row] = await signedInStatement(database).execute({ userId, shopId: known ? shopId : null })
   return row ?? null
 }
 

@@ -3,6 +3,7 @@ import { filmReading, lot, pairing, printer, resin, study } from '#db/schema/ind
 import { detailTargetSchema, filmSettingsSchema, type Study, type StudyChange } from '#shared/contracts/studies.ts'
 import type { Executor } from '../dependencies.ts'
 import { byNumber, byText, byTime, containing, keyset, pageOf, readSort } from './keyset.ts'
+import { preparedOnce } from './prepared.ts'
 import type { ListQuery } from './printers.ts'
 import { changeVersioned, instantsToText, type ThingKey, type VersionedChange } from './versioned.ts'
 
@@ -76,8 +77,11 @@ export async function listStudies(database: Executor, shopId: string, query: Stu
   return { items: page.items.map(toStudy), nextCursor: page.nextCursor, total: counted?.n ?? 0 }
 }
 
-export async function readStudy(database: Executor, { shopId, id }: ThingKey): Promise<Study | null> {
-  const [row] = await rowsOf(database).where(and(eq(study.shopId, shopId), eq(study.id, id)))
+const studyStatement = preparedOnce(database =>
+  rowsOf(database).where(and(eq(study.shopId, sql.placeholder('shopId')), eq(study.id, sql.placeholder('id')))).prepare('read_study'))
+
+export async function readStudy(database: Executor, key: ThingKey): Promise<Study | null> {
+  const [row] = await studyStatement(database).execute({ shopId: key.shopId, id: key.id })
   return row === undefined ? null : toStudy(row)
 }
 
