@@ -96,7 +96,7 @@ export default defineConfig(
     },
   },
   { files: ['src/**/*.{ts,vue}'], languageOptions: { globals: { ...globals.browser, ...globals.worker } } },
-  { files: ['server/**/*.ts', 'db/**/*.{ts,mjs}', 'tests/**/*.ts', 'scripts/**/*.mjs', '*.{ts,js}'], languageOptions: { globals: globals.node } },
+  { files: ['server/**/*.ts', 'db/**/*.{ts,mjs}', 'tests/**/*.{ts,mjs}', 'scripts/**/*.mjs', '*.{ts,js}'], languageOptions: { globals: globals.node } },
   {
     files: ['shared/**/*.ts'],
     rules: {

@@ -31,7 +31,8 @@ function startWatcher(own, name, parameters, environment) {
     tell('SIGTERM')
     // The whole group must be gone, not only the watcher.
     const look = setInterval(() => {
-      if (tell(Date.now() - began > 10_000 ? 'SIGKILL' : 0)) return
+      const waited = Date.now() - began
+      if (waited < 12_000 && tell(waited > 10_000 ? 'SIGKILL' : 0)) return
       clearInterval(look)
       resolve()
     }, 50)

@@ -84,13 +84,22 @@ export function runningPostgres(dataFolder) {
   return found.kind === 'runs' ? found.pid : null
 }
 
-/** Whether a process is there at all, whoever owns it. */
+/**
+ * Whether a process works, whoever owns it. One that has ended and that nobody has fetched yet, as in a container whose first
+ * process fetches nobody, does not.
+ *
+ * @param {number} pid
+ */
 export function isAlive(pid) {
   try {
     process.kill(pid, 0)
-    return true
   } catch (error) {
-    return error.code === 'EPERM'
+    if (error.code !== 'EPERM') return false
+  }
+  try {
+    return !/^State:\s+[ZX]/m.test(readFileSync(`/proc/${pid}/status`, 'utf8'))
+  } catch {
+    return !existsSync('/proc/self/status')
   }
 }
 

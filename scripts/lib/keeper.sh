@@ -53,9 +53,13 @@ done
 if [ -n "$postgres" ]; then
   if [ -n "$folder" ]; then kill -s QUIT "$postgres" 2>/dev/null; else kill -s INT "$postgres" 2>/dev/null; fi
 fi
+# Ended, too, is one that nobody has fetched yet.
+postgres_ended() {
+  [ -z "$postgres" ] || ! kill -s 0 "$postgres" 2>/dev/null || grep -q '^State:.*Z' "/proc/$postgres/status" 2>/dev/null
+}
 tries=0
 while [ -n "$folder" ] && [ "$tries" -lt 50 ]; do
-  if [ -z "$postgres" ] || ! kill -s 0 "$postgres" 2>/dev/null; then
+  if postgres_ended; then
     rm -rf -- "$folder" 2>/dev/null
     [ -e "$folder" ] || break
   fi

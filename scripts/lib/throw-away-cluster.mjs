@@ -10,7 +10,7 @@ import { step } from './say.mjs'
  * A PostgreSQL for tests and benchmarks, removed when the script closes, whether they pass, fail or are broken off; its keeper
  * also ends what the script started when the script is killed hard.
  *
- * @returns {Promise<{ url: string, alsoEnd: (group: number) => void }>} alsoEnd: a process group that goes with it
+ * @returns {Promise<{ url: string, folder: string, alsoEnd: (group: number) => void }>} alsoEnd: a process group that goes with it
  */
 export async function startThrowAwayCluster() {
   const folder = mkdtempSync(join(temporaryFolder(), 'fanlight-test-'))
@@ -24,5 +24,5 @@ export async function startThrowAwayCluster() {
   const cluster = await step('starting a PostgreSQL of our own', () => startCluster({ folder, durable: false }))
   keeper.tell('postgres', cluster.pid)
   closeLater(cluster.stop)
-  return { url: cluster.url, alsoEnd: group => keeper.tell('group', group) }
+  return { url: cluster.url, folder, alsoEnd: group => keeper.tell('group', group) }
 }
