@@ -245,7 +245,7 @@ describe('the list', () => {
     expect(seen).toEqual(['1/1', '1/2', '1/3', '2/1', '2/2', '2/3', '3/1', '3/2', '3/3'])
   })
 
-  it.each(['x', 'bnVsbA', '%00'])('refuses the cursor %s', async cursor => {
+  it.each(['x', 'bnVsbA', 'W10'])('refuses the cursor %s', async cursor => {
     expect((await engineer.send('GET', `${path}/film-readings?cursor=${cursor}`)).status).toBe(400)
   })
 
