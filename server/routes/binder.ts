@@ -28,14 +28,29 @@ type Answer<O> = OperationResponse<O> extends undefined ? void : OperationRespon
 export type Handler<O> = (call: Call<O>) => Promise<Answer<O>>
 type ShopHandler<O> = (call: Omit<Call<O>, 'actor'> & { readonly actor: ShopActor }) => Promise<Answer<O>>
 
+/** Names of fields that nobody asked for may be as long as the body. */
+const shortened = (text: string): string => (text.length > 200 ? `${text.slice(0, 199)}…` : text)
+
+/** Texts that PostgreSQL cannot hold: with a zero byte, or with half of a character that takes two. */
+function unstorableTexts(value: unknown, path: string): FieldProblem[] {
+  if (typeof value === 'string') {
+    return /[\0\p{Surrogate}]/u.test(value) ? [{ path, sentence: 'Holds a character that cannot be stored; type it anew.' }] : []
+  }
+  if (typeof value !== 'object' || value === null) return []
+  return Object.entries(value).flatMap(([name, part]) => unstorableTexts(part, `${path}.${name}`))
+}
+
 function parsePart<Schema extends z.ZodType>(schema: Schema | undefined, value: unknown, part: string): z.output<Schema> | undefined {
   if (schema === undefined) return undefined
   const parsed = schema.safeParse(value)
-  if (parsed.success) return parsed.data
-  const fields: FieldProblem[] = parsed.error.issues.slice(0, 50).map(issue => ({
-    path: [part, ...issue.path.map(String)].join('.'),
-    sentence: issue.message,
-  }))
+  const fields: FieldProblem[] = parsed.success
+    ? unstorableTexts(parsed.data, part)
+    : parsed.error.issues.slice(0, 50).map(issue => ({
+        path: shortened([part, ...issue.path.map(String)].join('.')),
+        // A message may repeat what was sent.
+        sentence: shortened(issue.message),
+      }))
+  if (parsed.success && fields.length === 0) return parsed.data
   // An id in the address that is no id names nothing.
   if (part === 'params') throw notFound('thing')
   const first = fields[0]
