@@ -1,6 +1,7 @@
 import { setTimeout as wait } from 'node:timers/promises'
 import { sql } from 'drizzle-orm'
 import nodemailer from 'nodemailer'
+import pg from 'pg'
 import PgBoss from 'pg-boss'
 import type { Logger } from 'pino'
 import type { Executor, Mail, MailQueue } from '../dependencies.ts'
@@ -34,6 +35,22 @@ function withinTransaction(database: Executor) {
   }
 }
 
+/** Any number, the same in every server of one deployment. */
+const startLock = 712_554_303
+
+/** pg-boss makes its tables at the first start; two servers that start together would stand in each other's way. */
+async function oneAtATime(databaseUrl: string, work: () => Promise<void>): Promise<void> {
+  const client = new pg.Client({ connectionString: databaseUrl })
+  await client.connect()
+  try {
+    await client.query('select pg_advisory_lock($1)', [startLock])
+    await work()
+  } finally {
+    // Ending the connection gives the lock back.
+    await client.end()
+  }
+}
+
 /**
  * Mails wait in PostgreSQL and leave by SMTP, with retries: a mail server that is down delays and loses nothing, and a
  * server that dies between the change and the mail sends it when it is back. A mail that was sent is deleted, since its
@@ -54,8 +71,10 @@ export async function startMailQueue(options: {
     connectionString: options.databaseUrl, max: 3, application_name: 'fanlight mail', schedule: false, maintenanceIntervalSeconds: 30,
   })
   boss.on('error', error => logger.warn({ err: loggable(error) }, 'mail queue'))
-  await boss.start()
-  await boss.createQueue(queueName)
+  await oneAtATime(options.databaseUrl, async () => {
+    await boss.start()
+    await boss.createQueue(queueName)
+  })
   const transport = nodemailer.createTransport({ url: options.smtpUrl, connectionTimeout: 10_000, greetingTimeout: 10_000, socketTimeout: 20_000 })
   const settings = { ...retries, retryDelay: options.retryDelaySeconds ?? retries.retryDelay, expireInSeconds: sendSecondsMax }
 

@@ -16,6 +16,8 @@ export async function startFakeMailServer(clock: () => Date): Promise<FakeMailSe
   let count = 0
   const server = new SMTPServer({
     disabledCommands: ['AUTH', 'STARTTLS'],
+    // On loopback there is no name to look up, and offline nobody to ask.
+    disableReverseLookup: true,
     onData(stream, _session, done) {
       simpleParser(stream).then(mail => {
         const text = mail.text ?? ''
