@@ -1,6 +1,6 @@
 import { useQueryClient } from '@tanstack/vue-query'
 import { computed, reactive, ref, shallowRef, toRaw, watch, type Ref } from 'vue'
-import type { z } from 'zod'
+import { z } from 'zod'
 import { ApiError } from '@/api/call.ts'
 
 /** One field of a form, as people see it. */
@@ -45,6 +45,11 @@ interface Options<T extends Versioned> {
   readonly update: (values: Record<string, unknown>, baseVersion: number) => Promise<T>
 }
 
+const draftSchema = z.object({
+  values: z.record(z.string(), z.unknown()),
+  base: z.object({ version: z.number(), values: z.record(z.string(), z.unknown()) }),
+})
+
 /** Input, checks, saving and the meeting of two edits, for every thing that people keep. */
 export function useThingForm<T extends Versioned>(options: Options<T>) {
   const queries = useQueryClient()
@@ -56,6 +61,8 @@ export function useThingForm<T extends Versioned>(options: Options<T>) {
   const stale = shallowRef<T | null>(null)
   const touched = ref(false)
   let idempotencyKey = crypto.randomUUID()
+  /** What the edit began from: the version that a save names, and the values that tell what was changed. */
+  let base: { version: number; values: Record<string, unknown> } = { version: 0, values: { ...options.initial } }
 
   const clean = (): Record<string, unknown> =>
     Object.fromEntries(options.fields.map(field => {
@@ -64,13 +71,18 @@ export function useThingForm<T extends Versioned>(options: Options<T>) {
       return [field.name, value]
     }))
 
+  /** Only what this person changed: saved over another edit, it leaves that edit's other fields alone. */
+  const changes = (): Record<string, unknown> =>
+    Object.fromEntries(Object.entries(clean()).filter(([name]) => toRaw(values)[name] !== base.values[name]))
+
   function readDraft(): void {
     try {
       const kept: unknown = JSON.parse(sessionStorage.getItem(options.draftKey) ?? 'null')
-      if (typeof kept === 'object' && kept !== null) {
-        Object.assign(values, kept)
-        touched.value = true
-      }
+      const draft = draftSchema.safeParse(kept)
+      if (!draft.success) return
+      Object.assign(values, draft.data.values)
+      base = draft.data.base
+      touched.value = true
     } catch {
       sessionStorage.removeItem(options.draftKey)
     }
@@ -81,10 +93,15 @@ export function useThingForm<T extends Versioned>(options: Options<T>) {
     touched.value = false
   }
 
-  /** Shows a thing as it is stored; what was typed and not saved yet stays in front. */
+  /**
+   * Shows a thing as it is stored. An edit under way stays in front and keeps the version that it began from, so that
+   * saving it meets the other edit instead of overwriting it.
+   */
   function show(next: T): void {
+    if (touched.value && thing.value !== null) return
     thing.value = next
     for (const field of options.fields) values[field.name] = shown((next as Record<string, unknown>)[field.name], field)
+    base = { version: next.version, values: { ...toRaw(values) } }
     readDraft()
   }
 
@@ -94,7 +111,7 @@ export function useThingForm<T extends Versioned>(options: Options<T>) {
     touched.value = true
     // Another content is another create: the old key would answer with the old thing.
     idempotencyKey = crypto.randomUUID()
-    sessionStorage.setItem(options.draftKey, JSON.stringify(toRaw(values)))
+    sessionStorage.setItem(options.draftKey, JSON.stringify({ values: toRaw(values), base }))
   }
 
   watch(values, () => {
@@ -114,7 +131,7 @@ export function useThingForm<T extends Versioned>(options: Options<T>) {
     busy.value = true
     error.value = null
     try {
-      const saved = thing.value === null ? await options.create(clean(), idempotencyKey) : await options.update(clean(), baseVersion ?? thing.value.version)
+      const saved = thing.value === null ? await options.create(clean(), idempotencyKey) : await options.update(changes(), baseVersion ?? base.version)
       forgetDraft()
       stale.value = null
       show(saved)

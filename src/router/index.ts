@@ -44,6 +44,7 @@ const routes: RouteRecordRaw[] = [
       { path: 'lots/new', name: names.lotNew, component: () => import('@/views/LotView.vue'), meta: { title: 'New lot' } },
       { path: 'lots/:lotId', name: names.lot, component: () => import('@/views/LotView.vue'), meta: { title: 'Lot' } },
       { path: 'pairings', name: names.pairings, component: () => import('@/views/PairingListView.vue'), meta: { title: 'Pairings' } },
+      { path: 'pairings/:pairingId', name: names.pairing, component: () => import('@/views/PairingView.vue'), meta: { title: 'Pairing' } },
       { path: 'members', name: names.members, component: () => import('@/views/MembersView.vue'), meta: { title: 'Members' } },
       { path: ':rest(.*)*', component: () => import('@/views/NotFoundView.vue'), meta: { title: 'Not found' } },
     ],

@@ -25,6 +25,7 @@ export const routeNames = {
   lotNew: 'lot-new',
   lot: 'lot',
   pairings: 'pairings',
+  pairing: 'pairing',
   members: 'members',
   notFound: 'not-found',
 } as const
