@@ -1,6 +1,7 @@
 // npm run dev: PostgreSQL, server and client with hot reload of both sides.
 import { spawn } from 'node:child_process'
 import { join } from 'node:path'
+import { createInterface } from 'node:readline'
 import { findFreePort } from '../db/cluster/cluster.mjs'
 import { close, closeLater, isClosing, runScript } from './lib/closing.mjs'
 import { checkNode, installPackages } from './lib/install.mjs'
@@ -8,10 +9,22 @@ import { openDatabase, sessionSecret, takeDataFolder } from './lib/own-folder.mj
 import { choosePort } from './lib/ports.mjs'
 import { root } from './lib/places.mjs'
 import { say } from './lib/say.mjs'
+import { readReady, saySignIns } from './lib/server-process.mjs'
+
+let starts = 0
+/** The server says anew at each start that it listens. */
+function showServerLine(line) {
+  const ready = readReady(line)
+  if (ready === null) return say(line)
+  starts += 1
+  say(`${new Date().toTimeString().slice(0, 8)} the server ${starts === 1 ? 'is ready' : 'is ready again'}`)
+  if (starts === 1) saySignIns(ready.demo)
+}
 
 /** Starts one of the two watchers in a group of its own: the server that tsx restarts is its child. */
-function startWatcher(own, name, parameters, environment) {
-  const child = spawn(process.execPath, parameters, { cwd: root, env: { ...process.env, ...environment }, stdio: ['ignore', 'inherit', 'inherit'], detached: true })
+function startWatcher(own, name, parameters, environment, show = say) {
+  const child = spawn(process.execPath, parameters, { cwd: root, env: { ...process.env, ...environment }, stdio: ['ignore', 'pipe', 'inherit'], detached: true })
+  createInterface({ input: child.stdout }).on('line', show)
   if (child.pid !== undefined) own.keeper.tell('group', child.pid)
   child.once('exit', (code, signal) => {
     if (isClosing()) return
@@ -55,8 +68,8 @@ runScript(async () => {
     FANLIGHT_API_PORT: String(apiPort),
   }
   if (isClosing()) return
-  startWatcher(own, 'The server', [join(root, 'node_modules', 'tsx', 'dist', 'cli.mjs'), 'watch', '--clear-screen=false', 'server/main.ts'], environment)
+  startWatcher(own, 'The server', [join(root, 'node_modules', 'tsx', 'dist', 'cli.mjs'), 'watch', '--clear-screen=false', 'server/main.ts'], environment, showServerLine)
   startWatcher(own, 'Vite', [join(root, 'node_modules', 'vite', 'bin', 'vite.js'), '--host', '127.0.0.1', '--port', String(clientPort), '--strictPort'], environment)
   own.noteAddress(address)
-  say(`\nClient with hot reload: ${address}   (API on ${apiPort}; FANLIGHT_READY below names the demo sign-ins)\nCtrl-C ends everything.\n`)
+  say(`\nClient with hot reload: ${address}   (API on ${apiPort})\nCtrl-C ends everything.\n`)
 }, { signalIsFine: true })

@@ -7,7 +7,7 @@ import { checkNode, installPackages } from './lib/install.mjs'
 import { openDatabase, sessionSecret, takeDataFolder } from './lib/own-folder.mjs'
 import { choosePort, isFree } from './lib/ports.mjs'
 import { say, step } from './lib/say.mjs'
-import { startServer, stopServer } from './lib/server-process.mjs'
+import { saySignIns, startServer, stopServer } from './lib/server-process.mjs'
 
 const began = performance.now()
 
@@ -49,10 +49,7 @@ async function main() {
   own.noteAddress(ready.url)
 
   say(`\nFanlight is ready after ${((performance.now() - began) / 1000).toFixed(1)} s:  ${ready.url}\n`)
-  if (ready.demo.length > 0) {
-    say('Sign in to the demo shop as:')
-    for (const { role, email, password } of ready.demo) say(`  ${role.padEnd(11)} ${email.padEnd(34)} ${password}`)
-  }
+  saySignIns(ready.demo)
   say(`\nData: ${own.folder}\nCtrl-C ends everything.`)
 }
 

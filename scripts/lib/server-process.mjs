@@ -4,6 +4,30 @@ import { createInterface } from 'node:readline'
 import { beginLog } from '../../db/cluster/cluster.mjs'
 import { ClosingError, isClosing, whenClosing } from './closing.mjs'
 import { root } from './places.mjs'
+import { say } from './say.mjs'
+
+/**
+ * @typedef {{ url: string, demo: { email: string, password: string, role: string }[] }} Ready
+ */
+
+const readyMark = 'FANLIGHT_READY '
+
+/**
+ * What the server says when it listens.
+ *
+ * @param {string} line of its standard output
+ * @returns {Ready | null} null for any other line
+ */
+export function readReady(line) {
+  return line.startsWith(readyMark) ? JSON.parse(line.slice(readyMark.length)) : null
+}
+
+/** @param {Ready['demo']} demo */
+export function saySignIns(demo) {
+  if (demo.length === 0) return
+  say('Sign in to the demo shop as:')
+  for (const { role, email, password } of demo) say(`  ${role.padEnd(11)} ${email.padEnd(34)} ${password}`)
+}
 
 /**
  * Starts the server and waits until it says that it listens.
@@ -15,7 +39,7 @@ import { root } from './places.mjs'
  * @param {Record<string, string>} options.environment
  * @param {string} options.logFile
  * @param {(pid: number) => void} options.started told the process number at once
- * @returns {Promise<{ child: import('node:child_process').ChildProcess, ready: { url: string, demo: { email: string, password: string, role: string }[] } }>}
+ * @returns {Promise<{ child: import('node:child_process').ChildProcess, ready: Ready }>}
  */
 export function startServer({ environment, logFile, started }) {
   if (isClosing()) return Promise.reject(new ClosingError('closing'))
@@ -41,9 +65,10 @@ export function startServer({ environment, logFile, started }) {
     })
     createInterface({ input: child.stderr }).on('line', keep)
     createInterface({ input: child.stdout }).on('line', line => {
-      if (!line.startsWith('FANLIGHT_READY ')) return keep(line)
+      const facts = readReady(line)
+      if (facts === null) return keep(line)
       ready = true
-      resolve({ child, ready: JSON.parse(line.slice('FANLIGHT_READY '.length)) })
+      resolve({ child, ready: facts })
     })
     child.once('error', reject)
     // Not "exit": by then its last words may still be under way.
