@@ -16,7 +16,8 @@ export interface TwoLineOptions extends WorkingCurveOptions {
  * on a steep absorption edge.
  *
  * With the share given it has three parameters, otherwise four; films seldom tell four, and then it is refused. All
- * parameters but the share are fitted on the log scale, their intervals too.
+ * parameters but the share are fitted on the log scale, their intervals too. Bands are linear approximations: 95 % hold
+ * 92 to 95 % (`npm run simulate film-lines`).
  *
  * @throws {StatsError} `share-out-of-range`, and as `fitWorkingCurve`
  * @example

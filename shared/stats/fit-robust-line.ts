@@ -10,7 +10,7 @@ export interface RobustLine {
   readonly slopeStandardError: number
   /** The line around its mean of x and the variances there: what Fieller needs. */
   readonly centre: { readonly x: number; readonly y: number; readonly heightVariance: number; readonly slopeVariance: number; readonly covariance: number }
-  /** Scatter of the points that agree, from the median of the residuals' sizes. */
+  /** Scatter of the points that agree, from the median size of all residuals but the two smallest. */
   readonly scale: number
   /** Bisquare weights from 0 (ignored) to 1, one for each point. */
   readonly robustWeights: readonly number[]
@@ -28,10 +28,13 @@ const normalMedian = 0.6745
 /**
  * Straight line by Tukey's bisquare M-estimate, with the median absolute residual as scale.
  *
- * Starts at the median of all slopes between two points (Theil and Sen), since the bisquare has more than one solution
- * and the one near least squares may be the pulled one. Standard errors after Huber, Robust Statistics (1981), 7.6.
+ * The two smallest residuals do not count for the scale: a line of two parameters passes near two points in any case,
+ * and with few points the scale would collapse (Holland & Welsch, Commun. Statist. A6 (1977) 813). Starts at the median of all slopes
+ * between two points (Theil and Sen), since the bisquare has more than one solution and the one near least squares may be
+ * the pulled one. Standard errors after Huber, Robust Statistics (1981), 7.6, times 1 + 1/n: found by simulation, without it
+ * intervals of 6 to 12 points hold 93 % (tests/simulation/film-lines-coverage.ts).
  *
- * @returns refused with fewer than four points: three cannot outvote one
+ * @returns refused with fewer than five points: too few to outvote one
  * @throws {StatsError} `length-mismatch`
  * @example
  * fitRobustLine({ x: [1, 2, 3, 4, 5], y: [1, 2, 3, 4, 90] }) // slope 1
@@ -40,7 +43,7 @@ export function fitRobustLine(data: { readonly x: readonly number[]; readonly y:
   const { x, y } = data
   if (x.length !== y.length) throw new StatsError('length-mismatch', `x has ${x.length} values, y ${y.length}`)
   const count = x.length
-  if (count < 4) return { kind: 'refused', reason: 'too-few-points', detail: `A robust line needs 4 points, got ${count}.` }
+  if (count < 5) return { kind: 'refused', reason: 'too-few-points', detail: `A robust line needs 5 points, got ${count}.` }
   if (x.every(value => value === x[0])) return { kind: 'refused', reason: 'no-spread', detail: 'All x are equal: no line can be told.' }
   const meanX = x.reduce((sum, value) => sum + value, 0) / count
   const centred = x.map(value => value - meanX)
@@ -50,7 +53,7 @@ export function fitRobustLine(data: { readonly x: readonly number[]; readonly y:
   let height = median(y.map((value, i) => value - slope * (centred[i] ?? 0)))
   for (let step = 0; step < 500; step++) {
     const residuals = y.map((value, i) => value - height - slope * (centred[i] ?? 0))
-    const scale = Math.max(median(residuals.map(Math.abs)) / normalMedian, floor)
+    const scale = Math.max(scaleOf(residuals), floor)
     const weights = residuals.map(residual => bisquare(residual / scale))
     const line = weightedLine(centred, y, weights)
     if (line === null) break
@@ -64,6 +67,10 @@ export function fitRobustLine(data: { readonly x: readonly number[]; readonly y:
 
 function bisquare(u: number): number {
   return Math.abs(u) < tuning ? (1 - (u / tuning) ** 2) ** 2 : 0
+}
+
+function scaleOf(residuals: readonly number[]): number {
+  return median(residuals.map(Math.abs).sort((a, b) => a - b).slice(2)) / normalMedian
 }
 
 function median(values: readonly number[]): number {
@@ -115,7 +122,7 @@ function describe(parts: {
   const count = x.length
   const degreesOfFreedom = count - 2
   const residuals = y.map((value, i) => value - height - slope * (centred[i] ?? 0))
-  const scale = Math.max(median(residuals.map(Math.abs)) / normalMedian, floor)
+  const scale = Math.max(scaleOf(residuals), floor)
   const robustWeights = residuals.map(residual => bisquare(residual / scale))
   const derivatives = residuals.map(residual => {
     const share = (residual / scale / tuning) ** 2
@@ -125,7 +132,7 @@ function describe(parts: {
   const derivativeVariance = derivatives.reduce((sum, value) => sum + (value - meanDerivative) ** 2, 0) / (count - 1)
   const kappa = 1 + (2 * derivativeVariance) / (count * meanDerivative ** 2)
   const squares = residuals.reduce((sum, residual, i) => sum + (residual * (robustWeights[i] ?? 0)) ** 2, 0) / degreesOfFreedom
-  const variance = squares * (kappa / meanDerivative) ** 2
+  const variance = squares * ((kappa / meanDerivative) * (1 + 1 / count)) ** 2
   const slopeVariance = variance / centred.reduce((sum, value) => sum + value * value, 0)
   const heightVariance = variance / count
   return {

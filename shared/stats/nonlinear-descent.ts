@@ -16,19 +16,25 @@ const firstDampings = [1e-3, 1]
 const sizes = [1, 0.1, 10]
 
 /**
- * From one start, and from a tenth and ten times of it, to the lowest optimum that three ways reach.
+ * From one start, and where its ways disagree from a tenth and ten times of it, to the lowest optimum that three ways reach.
  *
  * Undamped Gauss-Newton steps can run into a valley without end, and the library keeps steps that made things worse, so
- * each way alone ends now and then in a wrong place. All are taken and the lowest one that settled wins.
+ * each way alone ends now and then in a wrong place. The lowest one that settled wins; only where all three ways of a
+ * size settle in one place is the search over.
  */
 export function searchFrom(problem: NonlinearProblem, start: readonly number[]): Descent {
   let best: Descent | null = null
   for (const size of sizes) {
     const from = start.map(value => value * size)
-    best = better(best, descend(problem, from, undampedSteps))
-    for (const damping of firstDampings) best = better(best, dampedSearch(problem, from, damping))
+    const ends = [descend(problem, from, undampedSteps), ...firstDampings.map(damping => dampedSearch(problem, from, damping))]
+    for (const end of ends) best = better(best, end)
+    if (best !== null && ends.every(end => end.verdict === 'converged' && isSame(end, ends[0]))) return best
   }
   return best ?? descend(problem, start, undampedSteps)
+}
+
+function isSame(one: Descent, other: Descent | undefined): boolean {
+  return other !== undefined && Math.abs(one.residualSumOfSquares - other.residualSumOfSquares) <= 1e-6 * other.residualSumOfSquares + Number.MIN_VALUE
 }
 
 /** The settled one, then the lower one; between equals the first, so that mirrored optima do not take turns. */

@@ -5,6 +5,7 @@
 import { parseArgs } from 'node:util'
 import { seededRandom, type RandomSource } from '#shared/stats/index.ts'
 import { reportFilmCurves } from './film-curves-coverage.ts'
+import { reportFilmLines } from './film-lines-coverage.ts'
 import { reportFilm } from './film-report.ts'
 
 type Report = (options: { sets: number; random: RandomSource; print: (text: string) => void }) => void
@@ -13,6 +14,7 @@ type Report = (options: { sets: number; random: RandomSource; print: (text: stri
 const sections: Readonly<Record<string, Report>> = {
   film: reportFilm,
   'film-curves': reportFilmCurves,
+  'film-lines': reportFilmLines,
 }
 
 const { values, positionals } = parseArgs({

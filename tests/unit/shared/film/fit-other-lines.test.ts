@@ -34,8 +34,8 @@ describe('fitRobustWorkingCurve', () => {
     expect(fit.differs).toBe(true)
   })
 
-  it('refuses three films and passes on the refusal of the straight line', () => {
-    expect(fitRobustWorkingCurve({ readings: readings.slice(0, 3), exposureKind: 'seconds' })).toMatchObject({ kind: 'refused', reason: 'too-few-points' })
+  it('refuses four films and passes on the refusal of the straight line', () => {
+    expect(fitRobustWorkingCurve({ readings: readings.slice(0, 4), exposureKind: 'seconds' })).toMatchObject({ kind: 'refused', reason: 'too-few-points' })
     expect(fitRobustWorkingCurve({ readings: [], exposureKind: 'seconds' })).toMatchObject({ kind: 'refused', reason: 'no-films' })
   })
 })
