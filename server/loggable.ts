@@ -8,7 +8,7 @@ export interface LoggableError {
 }
 
 /** The statement without its values: Drizzle writes both into the message. */
-const withoutValues = (text: string): string => text.replace(/\nparams: [\s\S]*?(?=\n {4}at |$)/, '')
+const withoutValues = (text: string): string => text.replace(/\nparams: [\s\S]*$/, '')
 
 /**
  * Makes an error fit for the log.
@@ -27,7 +27,8 @@ export function loggable(error: unknown, depth = 0): LoggableError {
     name: error.name,
     message: withoutValues(error.message),
     ...(code === undefined ? {} : { code }),
-    ...(error.stack === undefined ? {} : { stack: withoutValues(error.stack) }),
+    // The stack begins with the message; values may hold lines that look like a stack's.
+    ...(error.stack === undefined ? {} : { stack: withoutValues(error.stack.replace(error.message, () => withoutValues(error.message))) }),
     ...(error.cause === undefined || depth === 5 ? {} : { cause: loggable(error.cause, depth + 1) }),
   }
 }
