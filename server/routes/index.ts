@@ -1,4 +1,5 @@
 import type { Router } from 'express'
+import { operations } from '#shared/contracts/index.ts'
 import type { Dependencies } from '../dependencies.ts'
 import { benchRoutes } from './bench.ts'
 import { Binder } from './binder.ts'
@@ -23,5 +24,6 @@ export function bindRoutes(router: Router, dependencies: Dependencies): Binder {
   filmImportRoutes(binder)
   filmExportRoutes(binder)
   openApiRoute(router)
+  binder.checkComplete(operations)
   return binder
 }
