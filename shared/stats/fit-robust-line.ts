@@ -1,3 +1,4 @@
+import { median, medianSlope } from './median-slope.ts'
 import { fitStraightLine } from './straight-line.ts'
 import { StatsError, type Refused } from './types.ts'
 
@@ -73,31 +74,10 @@ function scaleOf(residuals: readonly number[]): number {
   return median(residuals.map(Math.abs).sort((a, b) => a - b).slice(2)) / normalMedian
 }
 
-function median(values: readonly number[]): number {
-  const sorted = [...values].sort((a, b) => a - b)
-  const middle = sorted.length / 2
-  return sorted.length % 2 === 0
-    ? ((sorted[middle - 1] ?? 0) + (sorted[middle] ?? 0)) / 2
-    : (sorted[Math.floor(middle)] ?? 0)
-}
-
 const extent = (values: readonly number[]): [number, number] => [
   Math.abs(values.reduce((a, b) => Math.min(a, b), Infinity)),
   Math.abs(values.reduce((a, b) => Math.max(a, b), -Infinity)),
 ]
-
-/** Among many points every k-th partner is enough: the start need not be efficient. */
-function medianSlope(x: readonly number[], y: readonly number[]): number {
-  const stride = Math.max(1, Math.floor(x.length / 300))
-  const slopes: number[] = []
-  for (let i = 0; i < x.length; i += stride) {
-    for (let j = i + 1; j < x.length; j += stride) {
-      const run = (x[j] ?? 0) - (x[i] ?? 0)
-      if (run !== 0) slopes.push(((y[j] ?? 0) - (y[i] ?? 0)) / run)
-    }
-  }
-  return median(slopes)
-}
 
 /** Weights may be zero here; null where what is left has no spread. */
 function weightedLine(x: readonly number[], y: readonly number[], weights: readonly number[]): { height: number; slope: number } | null {

@@ -1,4 +1,5 @@
-import { normalUpperTail } from './quantiles.ts'
+import { solveSmallSystem } from './small-system.ts'
+import { tobitDerivatives, tobitLogLikelihood, type TobitRow } from './tobit-likelihood.ts'
 import { StatsError, type Refused } from './types.ts'
 
 /** A linear model some of whose responses are only known to lie below a limit. */
@@ -13,19 +14,6 @@ export interface TobitFit {
 }
 
 export type TobitOutcome = TobitFit | Refused<'too-few-measured' | 'no-scatter' | 'not-converged'>
-
-const logRootTwoPi = 0.9189385332046727
-
-/** ln of the chance of a standard normal below z, with digits also far in the tail (Abramowitz & Stegun 26.2.12). */
-function logNormalBelow(z: number): number {
-  if (z > -30) return Math.log(normalUpperTail(-z))
-  return -0.5 * z * z - logRootTwoPi - Math.log(-z) + Math.log1p(-1 / (z * z) + 3 / z ** 4)
-}
-
-/** Density over chance below: the pull of a censored response. */
-function pull(z: number): number {
-  return Math.exp(-0.5 * z * z - logRootTwoPi - logNormalBelow(z))
-}
 
 /**
  * Maximum likelihood for responses of which some are left-censored (Tobin, Econometrica 26 (1958) 24).
@@ -56,10 +44,10 @@ export function fitTobit(data: {
   const rows = design.map((row, i) => ({ row, y: (response[i] ?? 0) / size, isCensored: censored[i] === true }))
   // From σ as large as the responses: there the likelihood is smooth and every pull is mild.
   let place: number[] = [...new Array<number>(columns).fill(0), 1]
-  let value = logLikelihoodAt(rows, place)
+  let value = tobitLogLikelihood(rows, place)
   for (let step = 0; step < 200; step++) {
-    const { gradient, information } = derivativesAt(rows, place)
-    const move = solve(information, gradient)
+    const { gradient, information } = tobitDerivatives(rows, place)
+    const move = solveSmallSystem(information, gradient)
     if (move === null) return { kind: 'refused', reason: 'not-converged', detail: 'The measured and the missing films leave the line open.' }
     const decrement = move.reduce((sum, part, k) => sum + part * (gradient[k] ?? 0), 0)
     if (decrement < 1e-20) return describe(rows, place, value, size)
@@ -77,85 +65,20 @@ export function fitTobit(data: {
   return { kind: 'refused', reason: 'not-converged', detail: 'The likelihood runs away: the line is open on one side.' }
 }
 
-interface Row {
-  readonly row: readonly number[]
-  readonly y: number
-  readonly isCensored: boolean
-}
-
-/** Distance from the line in units of σ. */
-function distance({ row, y }: Row, place: readonly number[]): number {
-  return row.reduce((sum, value, k) => sum - value * (place[k] ?? 0), (place[row.length] ?? 0) * y)
-}
-
-function logLikelihoodAt(rows: readonly Row[], place: readonly number[]): number {
-  const inverse = place[place.length - 1] ?? 0
-  if (!(inverse > 0)) return -Infinity
-  let sum = 0
-  for (const one of rows) {
-    const z = distance(one, place)
-    sum += one.isCensored ? logNormalBelow(z) : Math.log(inverse) - 0.5 * z * z - logRootTwoPi
-  }
-  return sum
-}
-
-function derivativesAt(rows: readonly Row[], place: readonly number[]) {
-  const size = place.length
-  const inverse = place[size - 1] ?? 1
-  const gradient = new Array<number>(size).fill(0)
-  const information = Array.from({ length: size }, () => new Array<number>(size).fill(0))
-  const add = (list: number[] | undefined, k: number, by: number): void => {
-    if (list !== undefined) list[k] = (list[k] ?? 0) + by
-  }
-  for (const one of rows) {
-    const z = distance(one, place)
-    const byPlace = [...one.row.map(value => -value), one.y]
-    const force = one.isCensored ? pull(z) : -z
-    const stiffness = one.isCensored ? force * (force + z) : 1
-    for (const [i, a] of byPlace.entries()) {
-      add(gradient, i, force * a)
-      for (const [j, b] of byPlace.entries()) add(information[i], j, stiffness * a * b)
-    }
-    if (!one.isCensored) {
-      add(gradient, size - 1, 1 / inverse)
-      add(information[size - 1], size - 1, 1 / inverse ** 2)
-    }
-  }
-  return { gradient, information }
-}
-
-function halve(rows: readonly Row[], place: readonly number[], move: readonly number[], value: number) {
+function halve(rows: readonly TobitRow[], place: readonly number[], move: readonly number[], value: number) {
   for (let share = 1; share > 1e-10; share /= 2) {
     const next = place.map((part, k) => part + share * (move[k] ?? 0))
-    const there = logLikelihoodAt(rows, next)
+    const there = tobitLogLikelihood(rows, next)
     if (there > value) return { place: next, value: there }
   }
   return null
 }
 
-/** Gaussian elimination of a small symmetric system; null where it is singular. */
-function solve(matrix: readonly (readonly number[])[], right: readonly number[]): number[] | null {
-  const rows = matrix.map((row, i) => [...row, right[i] ?? 0])
-  const size = right.length
-  for (let k = 0; k < size; k++) {
-    const pivot = rows.slice(k).reduce((best, row) => (Math.abs(row[k] ?? 0) > Math.abs(best[k] ?? 0) ? row : best))
-    if (!(Math.abs(pivot[k] ?? 0) > 1e-280)) return null
-    rows.splice(rows.indexOf(pivot), 1)
-    rows.splice(k, 0, pivot)
-    for (const [i, row] of rows.entries()) {
-      if (i === k) continue
-      const factor = (row[k] ?? 0) / (pivot[k] ?? 1)
-      for (let j = k; j <= size; j++) row[j] = (row[j] ?? 0) - factor * (pivot[j] ?? 0)
-    }
-  }
-  return rows.map((row, k) => (row[size] ?? 0) / (row[k] ?? 1))
-}
-
-function describe(rows: readonly Row[], place: readonly number[], value: number, size: number): TobitOutcome {
+function describe(rows: readonly TobitRow[], place: readonly number[], value: number, size: number): TobitOutcome {
   const columns = place.length - 1
   const inverse = place[columns] ?? 1
-  const { information } = derivativesAt(rows, place)
-  const inside = place.map((_, k) => solve(information, place.map((__, i) => (i === k ? 1 : 0))) ?? [])
+  const { information } = tobitDerivatives(rows, place)
+  const inside = place.map((_, k) => solveSmallSystem(information, place.map((__, i) => (i === k ? 1 : 0))) ?? [])
   // coefficient = γ/θ, σ = 1/θ, both in units of `size`.
   const jacobian = place.map((part, k) => place.map((_, j) => {
     if (k === columns) return j === columns ? -1 / inverse ** 2 : 0
