@@ -59,7 +59,9 @@ export interface Config {
  * readConfig({ DATABASE_URL: 'postgres://fanlight@127.0.0.1/fanlight' }).port // => 3000
  */
 export function readConfig(environment: Readonly<Record<string, string | undefined>>): Config {
-  const parsed = schema.safeParse(environment)
+  // An empty setting is none: shells and container files write `SMTP_URL=` for that.
+  const given = Object.fromEntries(Object.entries(environment).filter(([, value]) => value !== ''))
+  const parsed = schema.safeParse(given)
   if (!parsed.success) {
     const lines = parsed.error.issues.map(issue => `${issue.path.join('.')}: ${issue.message}`)
     throw new Error(`The settings are not usable:\n${lines.join('\n')}`)
