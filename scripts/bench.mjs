@@ -12,7 +12,7 @@ runScript(async () => {
   await buildClient()
   const cluster = await startThrowAwayCluster()
   const { status } = await runChild(process.execPath, ['--import', 'tsx', 'tests/bench/run.ts', ...process.argv.slice(2)], {
-    cwd: root, show: true, env: { ...process.env, TEST_DATABASE_URL: cluster.url }, started: cluster.alsoEnd,
+    cwd: root, show: true, env: { ...process.env, TEST_DATABASE_URL: cluster.url },
   })
   return status
 })

@@ -3,7 +3,7 @@ import { spawn } from 'node:child_process'
 import { join } from 'node:path'
 import { createInterface } from 'node:readline'
 import { findFreePort } from '../db/cluster/cluster.mjs'
-import { close, closeLater, isClosing, runScript } from './lib/closing.mjs'
+import { close, closeLater, isClosing, ourKeeper, runScript } from './lib/closing.mjs'
 import { checkNode, installPackages } from './lib/install.mjs'
 import { openDatabase, sessionSecret, takeDataFolder } from './lib/own-folder.mjs'
 import { choosePort } from './lib/ports.mjs'
@@ -22,10 +22,10 @@ function showServerLine(line) {
 }
 
 /** Starts one of the two watchers in a group of its own: the server that tsx restarts is its child. */
-function startWatcher(own, name, parameters, environment, show = say) {
+function startWatcher(name, parameters, environment, show = say) {
   const child = spawn(process.execPath, parameters, { cwd: root, env: { ...process.env, ...environment }, stdio: ['ignore', 'pipe', 'inherit'], detached: true })
   createInterface({ input: child.stdout }).on('line', show)
-  if (child.pid !== undefined) own.keeper.tell('group', child.pid)
+  if (child.pid !== undefined) ourKeeper().tell('group', child.pid)
   child.once('exit', (code, signal) => {
     if (isClosing()) return
     process.stderr.write(`\n${name} ended by itself (${signal ?? `code ${code}`}).\n`)
@@ -68,8 +68,8 @@ runScript(async () => {
     FANLIGHT_API_PORT: String(apiPort),
   }
   if (isClosing()) return
-  startWatcher(own, 'The server', [join(root, 'node_modules', 'tsx', 'dist', 'cli.mjs'), 'watch', '--clear-screen=false', 'server/main.ts'], environment, showServerLine)
-  startWatcher(own, 'Vite', [join(root, 'node_modules', 'vite', 'bin', 'vite.js'), '--host', '127.0.0.1', '--port', String(clientPort), '--strictPort'], environment)
+  startWatcher('The server', [join(root, 'node_modules', 'tsx', 'dist', 'cli.mjs'), 'watch', '--clear-screen=false', 'server/main.ts'], environment, showServerLine)
+  startWatcher('Vite', [join(root, 'node_modules', 'vite', 'bin', 'vite.js'), '--host', '127.0.0.1', '--port', String(clientPort), '--strictPort'], environment)
   own.noteAddress(address)
   say(`\nClient with hot reload: ${address}   (API on ${apiPort})\nCtrl-C ends everything.\n`)
 }, { signalIsFine: true })

@@ -29,7 +29,7 @@ async function runAll() {
     }
     const cluster = await startThrowAwayCluster()
     const environment = { TEST_DATABASE_URL: cluster.url, CHROMIUM_PATH: findChromium() ?? '' }
-    for (const project of heavy) tests.push(await testProject(project, { words, environment, started: cluster.alsoEnd }))
+    for (const project of heavy) tests.push(await testProject(project, { words, environment }))
   }
   return closingLine(steps, tests)
 }

@@ -1,12 +1,11 @@
-import { existsSync, mkdtempSync, readFileSync, rmSync } from 'node:fs'
+import { existsSync, mkdirSync, readFileSync, rmSync } from 'node:fs'
 import { createRequire } from 'node:module'
-import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { performance } from 'node:perf_hooks'
 import { runChild } from './closing.mjs'
 import { countsOf } from './counts.mjs'
 import { enginesRefusing } from './engines.mjs'
-import { root } from './places.mjs'
+import { artifactsFolder, root } from './places.mjs'
 import { say } from './say.mjs'
 
 /** Oldest Node that package.json admits. */
@@ -64,23 +63,22 @@ export async function staticChecks() {
  * Runs one vitest project and answers its counts, read from its report file.
  *
  * @param {string} project
- * @param {{ words?: readonly string[], environment?: Record<string, string>, started?: (pid: number) => void }} [options] words:
+ * @param {{ words?: readonly string[], environment?: Record<string, string> }} [options] words:
  *   filters and options for vitest
  * @returns {Promise<import('./counts.mjs').Counts>}
  */
-export async function testProject(project, { words = [], environment = {}, started } = {}) {
-  // A folder of its own: two runs from one checkout must not read each other's report.
-  const folder = mkdtempSync(join(tmpdir(), 'fanlight-report-'))
-  const report = join(folder, 'report.json')
+export async function testProject(project, { words = [], environment = {} } = {}) {
+  mkdirSync(artifactsFolder, { recursive: true })
+  // A name of its own: two runs from one checkout must not read each other's report.
+  const report = join(artifactsFolder, `report-${project}-${process.pid}.json`)
   try {
     return await timed(`tests: ${project}`, async () => {
       const code = await run('vitest/vitest.mjs', ['run', '--project', project, '--passWithNoTests', '--reporter=default', '--reporter=json', `--outputFile.json=${report}`, ...words], {
         env: { ...process.env, ...environment },
-        ...(started === undefined ? {} : { started }),
       })
       return countsOf(code, existsSync(report) ? JSON.parse(readFileSync(report, 'utf8')) : null)
     }, counts => `${counts.passed} passed, ${counts.failed} failed`)
   } finally {
-    rmSync(folder, { recursive: true, force: true })
+    rmSync(report, { force: true })
   }
 }

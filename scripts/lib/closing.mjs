@@ -1,4 +1,5 @@
 import { spawn } from 'node:child_process'
+import { startKeeper } from './keeper.mjs'
 import { say } from './say.mjs'
 
 /** What must be closed, last opened first. */
@@ -8,10 +9,21 @@ const breakOff = []
 /** Process groups of programs under way. */
 const running = new Map()
 let ending = false
+let keeper = null
 let work = Promise.resolve()
 
 /** Thrown where a step finds that we are closing. */
 export class ClosingError extends Error {}
+
+/** The process that ends what we leave behind should we be killed hard. */
+export function ourKeeper() {
+  if (keeper === null) {
+    keeper = startKeeper()
+    // Dismissed last, when nothing is left to be looked after.
+    open.unshift(keeper.dismiss)
+  }
+  return keeper
+}
 
 export function isClosing() {
   return ending
@@ -95,15 +107,15 @@ function endGroup(child, hardAfterMilliseconds) {
  * @param {boolean} [options.show] output goes to the terminal instead of the answer
  * @param {number} [options.minutesMax]
  * @param {number} [options.hardAfterMilliseconds] how long it may take to end when we close
- * @param {(pid: number) => void} [options.started]
+ * @param {boolean} [options.mayOutlive] it is left to finish when we are killed hard
  * @returns {Promise<{ status: number, output: string }>}
  */
-export function runChild(command, parameters, { cwd, env, show = false, minutesMax = 60, hardAfterMilliseconds = 5_000, started } = {}) {
+export function runChild(command, parameters, { cwd, env, show = false, minutesMax = 60, hardAfterMilliseconds = 5_000, mayOutlive = false } = {}) {
   if (ending) return Promise.reject(new ClosingError('closing'))
   const child = spawn(command, parameters, { cwd, env, stdio: show ? ['ignore', 'inherit', 'inherit'] : ['ignore', 'pipe', 'pipe'], detached: true })
   if (child.pid !== undefined) {
     running.set(child.pid, { child, hardAfterMilliseconds })
-    started?.(child.pid)
+    if (!mayOutlive) ourKeeper().tell('group', child.pid)
   }
   const limit = setTimeout(() => {
     process.stderr.write(`\n${parameters[0]} takes longer than ${minutesMax} minutes and is ended.\n`)
@@ -116,6 +128,7 @@ export function runChild(command, parameters, { cwd, env, show = false, minutesM
     child.once('close', code => {
       clearTimeout(limit)
       running.delete(child.pid)
+      if (!mayOutlive) ourKeeper().tell('ended', child.pid)
       if (ending) reject(new ClosingError('closing'))
       else resolve({ status: code ?? 1, output })
     })

@@ -66,7 +66,7 @@ function canInstallFromDebian() {
 async function aptInstall(packages) {
   const env = { ...process.env, DEBIAN_FRONTEND: 'noninteractive' }
   // Broken off half-way the package system would ask for repair: it may take its time to end.
-  const apt = parameters => runChild('apt-get', ['-o', 'DPkg::Lock::Timeout=300', ...parameters], { env, hardAfterMilliseconds: 120_000 })
+  const apt = parameters => runChild('apt-get', ['-o', 'DPkg::Lock::Timeout=300', ...parameters], { env, hardAfterMilliseconds: 120_000, mayOutlive: true })
   const install = () => apt(['install', '-y', '--no-install-recommends', ...packages])
   let result = await install()
   if (result.status !== 0) {

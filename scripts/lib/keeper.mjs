@@ -4,7 +4,7 @@ import { join } from 'node:path'
 /**
  * A small process that ends what we leave behind should we be killed hard: it notices by the end of its input.
  *
- * @returns {{ tell: (what: 'group' | 'cluster' | 'postgres' | 'folder' | 'lock', value: string | number) => void, dismiss: () => void }}
+ * @returns {{ tell: (what: 'group' | 'ended' | 'cluster' | 'postgres' | 'folder' | 'lock', value: string | number) => void, dismiss: () => void }}
  */
 export function startKeeper() {
   // A session of its own: the Ctrl-C and the closing of the terminal that we answer to do not reach it.

@@ -1,7 +1,7 @@
 #!/bin/sh
 # Outlives the script that started it, even one killed hard, and ends what that one would leave behind.
 # Reads lines that say what there is; "done" means that the script closed in order itself.
-#   group <pid>      a process group
+#   group <pid>      a process group; ended <pid> follows: its number may be another's by then
 #   cluster <path>   a data folder on which PostgreSQL is about to start; postgres <pid> follows when it runs
 #   folder <path>    to be removed
 #   lock <path>      file that names the script as long as no other one took its place
@@ -14,6 +14,11 @@ lock=''
 while IFS=' ' read -r what value; do
   case "$what" in
     group) groups="$groups $value" ;;
+    ended)
+      rest=''
+      for group in $groups; do [ "$group" = "$value" ] || rest="$rest $group"; done
+      groups="$rest"
+      ;;
     cluster) cluster="$value" ;;
     postgres) postgres="$value" ;;
     folder) folder="$value" ;;

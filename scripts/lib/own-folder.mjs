@@ -4,9 +4,8 @@ import { join } from 'node:path'
 import { setTimeout as wait } from 'node:timers/promises'
 import { dataFolderIn, makePrivateFolder, startCluster } from '../../db/cluster/cluster.mjs'
 import { isAlive } from '../../db/cluster/postmaster.mjs'
-import { close, closeLater, isClosing } from './closing.mjs'
+import { close, closeLater, isClosing, ourKeeper } from './closing.mjs'
 import { installPostgres } from './install.mjs'
-import { startKeeper } from './keeper.mjs'
 import { holderOf, isStillThere, takeLock } from './lock.mjs'
 import { dataFolder } from './places.mjs'
 import { step } from './say.mjs'
@@ -14,7 +13,7 @@ import { step } from './say.mjs'
 /**
  * Takes this checkout's data folder for the present run; only one run at a time may.
  *
- * @returns {Promise<{ folder: string, keeper: ReturnType<typeof startKeeper>, noteServer: (pid: number) => void, noteAddress: (address: string) => void }>}
+ * @returns {Promise<{ folder: string, noteServer: (pid: number) => void, noteAddress: (address: string) => void }>}
  */
 export async function takeDataFolder() {
   const folder = dataFolder()
@@ -28,17 +27,14 @@ export async function takeDataFolder() {
       : `Fanlight is already being started from this folder (process ${pid}). Its address appears there.`)
   }
   closeLater(lock.release)
-  const keeper = startKeeper()
-  closeLater(keeper.dismiss)
-  keeper.tell('lock', lockFile)
+  ourKeeper().tell('lock', lockFile)
   await endFormerServer(lock.former?.server)
   const facts = {}
   const note = more => lock.note(Object.assign(facts, more))
   return {
     folder,
-    keeper,
     noteServer(pid) {
-      keeper.tell('group', pid)
+      ourKeeper().tell('group', pid)
       note({ server: holderOf(pid) })
     },
     noteAddress: address => note({ address }),
@@ -56,15 +52,15 @@ async function endFormerServer(server) {
 /**
  * The URL of the database: DATABASE_URL, or else this checkout's own PostgreSQL, which is started.
  *
- * @param {{ folder: string, keeper?: ReturnType<typeof startKeeper> }} own
+ * @param {{ folder: string }} own
  */
-export async function openDatabase({ folder, keeper }) {
+export async function openDatabase({ folder }) {
   const given = process.env.DATABASE_URL
   if (given !== undefined && given !== '') return given
   await installPostgres()
-  keeper?.tell('cluster', dataFolderIn(folder))
+  ourKeeper().tell('cluster', dataFolderIn(folder))
   const cluster = await step('starting PostgreSQL', () => startCluster({ folder, durable: true }))
-  keeper?.tell('postgres', cluster.pid)
+  ourKeeper().tell('postgres', cluster.pid)
   const watch = setInterval(() => {
     if (isAlive(cluster.pid) || isClosing()) return
     clearInterval(watch)

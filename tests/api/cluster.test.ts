@@ -130,13 +130,15 @@ describe('the throw-away PostgreSQL of a test run', () => {
     const child = spawn(process.execPath, ['--input-type=module', '-e', `
       import { runChild } from '${pathToFileURL(join(scripts, 'closing.mjs')).href}'
       import { startThrowAwayCluster } from '${pathToFileURL(join(scripts, 'throw-away-cluster.mjs')).href}'
-      const { url, folder, alsoEnd } = await startThrowAwayCluster()
-      void runChild('sleep', ['61'], { started: pid => { alsoEnd(pid); console.log('ready ' + JSON.stringify({ url, folder, program: pid })) } })
+      const { url, folder } = await startThrowAwayCluster()
+      void runChild('/bin/sh', ['-c', 'echo program $$; exec sleep 61'], { show: true })
+      console.log('ready ' + JSON.stringify({ url, folder }))
     `], { stdio: ['ignore', 'pipe', 'inherit'] })
     let output = ''
     child.stdout.setEncoding('utf8').on('data', text => { output += text })
-    await waitUntil('the cluster runs', () => output.includes('ready {'), 60)
-    const { url, folder, program }: { url: string; folder: string; program: number } = JSON.parse(/ready (.*)/.exec(output)?.[1] ?? '')
+    await waitUntil('the cluster runs', () => /ready \{.*\n/.test(output) && /program \d+\n/.test(output), 60)
+    const program = Number(/program (\d+)/.exec(output)?.[1])
+    const { url, folder }: { url: string; folder: string } = JSON.parse(/ready (.*)/.exec(output)?.[1] ?? '')
     expect(await query(url, 'show fsync')).toEqual(['off'])
     child.kill('SIGKILL')
     await waitUntil('nothing is left of it', () => !existsSync(folder) && processesOf(folder).length === 0 && !isAlive(program))
