@@ -1,11 +1,21 @@
-import { randomBytes } from 'node:crypto'
+import { createHash, randomBytes } from 'node:crypto'
+import { readFileSync, readdirSync } from 'node:fs'
+import { join } from 'node:path'
 import pg from 'pg'
 import { connectDatabase, type DatabaseConnection } from '#db/client.ts'
 import { migrateDatabase } from '#db/migrate.ts'
 
 /** Any number; keeps two test files from making the template at the same moment. */
 const templateLock = 712_554_302
-const templateName = 'fanlight_template'
+/** Named after the migrations: a cluster that outlives a run holds no template of yesterday's. */
+const templateName = `fanlight_template_${migrationsHash()}`
+
+function migrationsHash(): string {
+  const folder = join(import.meta.dirname, '../../db/migrations')
+  const hash = createHash('sha256')
+  for (const file of readdirSync(folder).filter(name => name.endsWith('.sql')).sort()) hash.update(file).update('\0').update(readFileSync(join(folder, file)))
+  return hash.digest('hex').slice(0, 12)
+}
 
 function serverUrl(): string {
   const url = process.env.TEST_DATABASE_URL
