@@ -34,15 +34,19 @@ export function lineAtDeadTime(points: readonly ModelPoint[], deadTime: number):
   }
 }
 
+/**
+ * @param points - films, or one point for each exposure: only differences of sums of squares count
+ * @param best.allowance - t² s², by how much the sum of squares may rise
+ */
 export function profileDeadTime(
   points: readonly ModelPoint[],
-  best: { readonly deadTime: number; readonly residualSumOfSquares: number; readonly allowance: number },
+  best: { readonly deadTime: number; readonly allowance: number },
 ): DeadTimeProfile {
   const shortest = points.reduce((least, point) => Math.min(least, point.exposure), Infinity)
   const longest = points.reduce((most, point) => Math.max(most, point.exposure), 0)
-  const bound = best.residualSumOfSquares + best.allowance
   /** On this scale t0 cannot pass the shortest exposure. */
   const at = (u: number): StraightLine | null => lineAtDeadTime(points, shortest - Math.exp(u))
+  const bound = (lineAtDeadTime(points, best.deadTime)?.residualSumOfSquares ?? 0) + best.allowance
   const left = (u: number): number => bound - (at(u)?.residualSumOfSquares ?? Infinity)
   const centre = Math.log(shortest - best.deadTime)
   const nearest = Math.log(shortest) - 25

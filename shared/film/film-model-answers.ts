@@ -45,9 +45,8 @@ function logExposureOf(fit: FilmModelFit, depth: number): number | null {
 
 function profileOf(fit: DeadTimeFit): DeadTimeProfile {
   const quantile = tQuantile(0.5 + fit.confidenceLevel / 2, fit.degreesOfFreedom)
-  return profileDeadTime(fit.points, {
+  return profileDeadTime(fit.levels, {
     deadTime: fit.deadTime.value,
-    residualSumOfSquares: fit.residualSumOfSquares,
     allowance: (quantile * fit.residualStandardDeviation) ** 2,
   })
 }

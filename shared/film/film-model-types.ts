@@ -13,6 +13,8 @@ interface FilmModelBase {
   readonly exposureKind: ExposureKind
   readonly confidenceLevel: number
   readonly points: readonly ModelPoint[]
+  /** One point for each exposure: mean depth and summed weight. */
+  readonly levels: readonly ModelPoint[]
   /** What the solver worked with; its meaning is the model's own. */
   readonly coefficients: readonly number[]
   readonly covariance: readonly (readonly number[])[]

@@ -23,19 +23,20 @@ const startShares = [-10, -3, -1, 0, 0.3, 0.6, 0.85, 0.97]
 export function fitDeadTimeCurve(options: WorkingCurveOptions): DeadTimeFit | FilmModelRefusal {
   const data = prepareModelData(options)
   if (data.kind === 'refused') return data
-  const { line, points } = data
+  const { line, points, levels, pureError } = data
   const shortest = line.measuredRange.exposureMin
   const starts = startShares.flatMap(share => {
-    const start = lineAtDeadTime(points, share * shortest)
+    const start = lineAtDeadTime(levels, share * shortest)
     return start !== null && start.slope > 0 ? [[start.meanY - start.slope * start.meanX, start.slope, share * shortest]] : []
   })
   if (starts.length === 0) return { kind: 'refused', reason: 'not-converged', detail: 'No dead time gives a curve that rises with exposure.' }
-  const squaresAt = (start: readonly number[]) => lineAtDeadTime(points, start[2] ?? 0)?.residualSumOfSquares ?? Infinity
+  const squaresAt = (start: readonly number[]) => lineAtDeadTime(levels, start[2] ?? 0)?.residualSumOfSquares ?? Infinity
   const closest = [...starts].sort((a, b) => squaresAt(a) - squaresAt(b)).slice(0, 2)
   const outcome = fitNonlinear({
-    x: points.map(point => point.exposure),
-    y: points.map(point => point.depthMicrometres),
-    weights: points.map(point => point.weight),
+    x: levels.map(level => level.exposure),
+    y: levels.map(level => level.depthMicrometres),
+    weights: levels.map(level => level.weight),
+    pureError,
     model: ([intercept = 0, slope = 0, deadTime = 0]) => t => intercept + slope * Math.log(t - deadTime),
     jacobian: ([, slope = 0, deadTime = 0]) => t => [1, Math.log(t - deadTime), -slope / (t - deadTime)],
     starts: closest,
@@ -47,7 +48,7 @@ export function fitDeadTimeCurve(options: WorkingCurveOptions): DeadTimeFit | Fi
   const degrees = outcome.degreesOfFreedom
   const told = degrees > 0
   const allowance = told ? (tQuantile(0.5 + confidenceLevel / 2, degrees) * outcome.residualStandardDeviation) ** 2 : Infinity
-  const profile = told ? profileDeadTime(points, { deadTime, residualSumOfSquares: outcome.residualSumOfSquares, allowance }) : null
+  const profile = told ? profileDeadTime(levels, { deadTime, allowance }) : null
   const open = { kind: 'unbounded' } as const
   const criticalExposure = Math.exp(-intercept / slope)
   const covarianceOf = (i: number, j: number): number => outcome.covariance[i]?.[j] ?? 0
@@ -60,9 +61,10 @@ export function fitDeadTimeCurve(options: WorkingCurveOptions): DeadTimeFit | Fi
     exposureKind: line.exposureKind,
     confidenceLevel,
     points,
+    levels,
     coefficients: outcome.parameters,
     covariance: outcome.covariance,
-    residuals: outcome.residuals,
+    residuals: points.map(point => point.depthMicrometres - intercept - slope * Math.log(point.exposure - deadTime)),
     residualSumOfSquares: outcome.residualSumOfSquares,
     degreesOfFreedom: degrees,
     residualStandardDeviation: outcome.residualStandardDeviation,

@@ -16,7 +16,7 @@ import { prepareModelData } from './model-data.ts'
 export function fitQuadraticCurve(options: WorkingCurveOptions): QuadraticFit | FilmModelRefusal {
   const data = prepareModelData(options)
   if (data.kind === 'refused') return data
-  const { line, points } = data
+  const { line, points, levels } = data
   const { meanLogExposure } = line.centre
   const outcome = leastSquares({
     design: points.map(point => {
@@ -41,6 +41,7 @@ export function fitQuadraticCurve(options: WorkingCurveOptions): QuadraticFit | 
     exposureKind: line.exposureKind,
     confidenceLevel: line.confidenceLevel,
     points,
+    levels,
     coefficients: outcome.coefficients,
     covariance: outcome.covariance,
     residuals: outcome.residuals,

@@ -31,15 +31,16 @@ export function fitTwoLineAttenuation(options: TwoLineOptions): TwoLineFit | Fil
   }
   const data = prepareModelData(options)
   if (data.kind === 'refused') return data
-  const { line, points } = data
+  const { line, points, levels, pureError } = data
   const dp = line.penetrationDepthMicrometres.value
   const logEc = Math.log(line.criticalExposure.value)
   const logits = shallowShare === undefined ? [-1.5, 0, 1.5] : [Math.log(shallowShare / (1 - shallowShare))]
   const starts = logits.flatMap(logit => [0, 1.5].map(logGap => [logEc, Math.log(dp / 1.5), logGap, logit]))
   const outcome = fitNonlinear({
-    x: points.map(point => Math.log(point.exposure)),
-    y: points.map(point => point.depthMicrometres),
-    weights: points.map(point => point.weight),
+    x: levels.map(level => Math.log(level.exposure)),
+    y: levels.map(level => level.depthMicrometres),
+    weights: levels.map(level => level.weight),
+    pureError,
     model: coefficients => {
       const parts = twoLineParts(coefficients)
       return logExposure => twoLineDepth(parts, logExposure)
@@ -74,9 +75,10 @@ export function fitTwoLineAttenuation(options: TwoLineOptions): TwoLineFit | Fil
     exposureKind: line.exposureKind,
     confidenceLevel: line.confidenceLevel,
     points,
+    levels,
     coefficients: outcome.parameters,
     covariance,
-    residuals: outcome.residuals,
+    residuals: points.map(point => point.depthMicrometres - twoLineDepth(parts, Math.log(point.exposure))),
     residualSumOfSquares: outcome.residualSumOfSquares,
     degreesOfFreedom,
     residualStandardDeviation: outcome.residualStandardDeviation,

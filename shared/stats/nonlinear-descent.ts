@@ -48,6 +48,7 @@ function better(first: Descent | null, second: Descent): Descent {
 function dampedSearch(problem: NonlinearProblem, start: readonly number[], firstDamping: number): Descent {
   let free = start
   let damping = firstDamping
+  let stalls = 0
   for (let count = 0; count < bursts; count++) {
     const at = linearise(problem, free)
     if (at !== null && at.relativeOffset < nearOffset) {
@@ -61,6 +62,9 @@ function dampedSearch(problem: NonlinearProblem, start: readonly number[], first
       damping *= 100
       if (damping > 1e9) break
     } else {
+      // Thrice next to nothing gained far from an optimum: a valley without end.
+      stalls = squares(problem, moved) > (1 - 1e-6) * squares(problem, free) ? stalls + 1 : 0
+      if (stalls === 3) break
       damping = Math.max(1e-3, damping / 100)
       free = moved
     }

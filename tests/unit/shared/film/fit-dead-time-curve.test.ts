@@ -76,6 +76,19 @@ describe('fitDeadTimeCurve', () => {
     expect(inMilliseconds.deadTime.interval.lower / 1000).toBeCloseTo(fit.deadTime.interval.lower, 7)
   })
 
+  it('is the fit of every single film where exposures have unequal numbers of them', () => {
+    const at = [1, 1, 1, 1.3, 1.8, 1.8, 2.5, 4, 6, 6, 6, 6, 9]
+    const films = at.map((t, i) => curve(t) + (scatterMicrometres[i % 10] ?? 0))
+    const own = fittedOnly(fitDeadTimeCurve({ readings: measured(at, films), exposureKind: 'seconds' }))
+    const direct = fitNonlinear({ x: at, y: films, model: ([a = 0, b = 0, t0 = 0]) => t => a + b * Math.log(t - t0), starts: [[120, 100, 0.49]] })
+    if (direct.kind === 'refused') throw new Error(direct.detail)
+    expect(own.degreesOfFreedom).toBe(10)
+    expect(own.residualSumOfSquares / direct.residualSumOfSquares).toBeCloseTo(1, 9)
+    expect(own.deadTime.value).toBeCloseTo(direct.parameters[2] ?? Number.NaN, 6)
+    expect(own.deadTime.standardError / (direct.standardErrors[2] ?? Number.NaN)).toBeCloseTo(1, 5)
+    for (const [i, residual] of direct.residuals.entries()) expect(own.residuals[i]).toBeCloseTo(residual, 5)
+  })
+
   it('leaves the dead time open where films cannot bound it from below', () => {
     const few = measured([4, 5, 6, 7, 8], [200, 224, 240, 258, 268].map((depth, i) => depth + 4 * (scatterMicrometres[i] ?? 0)))
     const outcome = fitDeadTimeCurve({ readings: few, exposureKind: 'seconds' })

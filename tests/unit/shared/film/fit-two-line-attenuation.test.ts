@@ -58,6 +58,22 @@ describe('fitTwoLineAttenuation', () => {
     }
   })
 
+  it('is the fit of every single film where exposures have unequal numbers of them', () => {
+    const at = [...scattered, ...scattered.slice(2, 4), ...scattered.slice(3, 5)].map((reading, i) => ({ ...reading, depthMicrometres: reading.depthMicrometres + 0.1 * Math.cos(9 * i) }))
+    const own = fittedOnly(fitTwoLineAttenuation({ readings: at, exposureKind: 'mJ/cm2', shallowShare: 0.5 }))
+    const direct = fitNonlinear({
+      x: at.map(reading => Math.log(reading.exposure)), y: at.map(reading => reading.depthMicrometres),
+      model: coefficients => logExposure => twoLineDepth(twoLineParts(coefficients), logExposure),
+      starts: [truth], held: [false, false, false, true],
+    })
+    if (direct.kind === 'refused') throw new Error(direct.detail)
+    expect(own.degreesOfFreedom).toBe(at.length - 3)
+    expect(own.residualSumOfSquares / direct.residualSumOfSquares).toBeCloseTo(1, 8)
+    expect(own.criticalExposure.value).toBeCloseTo(Math.exp(direct.parameters[0] ?? Number.NaN), 6)
+    expect(own.criticalExposure.standardError / (own.criticalExposure.value * (direct.standardErrors[0] ?? Number.NaN))).toBeCloseTo(1, 5)
+    for (const [i, residual] of direct.residuals.entries()) expect(own.residuals[i]).toBeCloseTo(residual, 4)
+  })
+
   it('answers depths and exposures that undo each other, with the interval around', () => {
     const fit = fittedOnly(fitTwoLineAttenuation({ readings: scattered, exposureKind: 'mJ/cm2', shallowShare: 0.5 }))
     const answer = modelExposureForDepth(fit, 100)
