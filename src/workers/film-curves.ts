@@ -3,7 +3,7 @@ import {
   censoredExposureForDepth, exposureForDepth, fitCensoredWorkingCurve, fitDeadTimeCurve, fitQuadraticCurve, fitTwoLineAttenuation, modelDepthAt, modelExposureForDepth,
   type CensoredWorkingCurve, type FilmModelFit, type FilmModelName, type Interval, type WorkingCurveFit, type WorkingCurveOptions,
 } from '#shared/film/index.ts'
-import type { CurveName, CurveSample } from './film-answer-types.ts'
+import type { CurveSample } from './film-answer-types.ts'
 
 /**
  * Thinnest film that would have held and been measured, where nobody knows better: a film thinner than this rarely
@@ -74,12 +74,4 @@ export function curveSamples(curve: AcceptedCurve, exposures: readonly number[])
     if (!Number.isFinite(at.depthMicrometres)) return []
     return [{ exposure, depth: at.depthMicrometres, confidence: at.confidenceInterval.kind === 'finite' ? [at.confidenceInterval.lower, at.confidenceInterval.upper] : null, prediction: null }]
   })
-}
-
-export const curveLabels: Readonly<Record<CurveName, string>> = {
-  'straight-line': 'Straight line',
-  'dead-time': 'Curve with a dead time',
-  quadratic: 'Bent curve',
-  'two-line': 'Curve for light of two kinds',
-  'with-missing-films': 'Straight line with missing films',
 }

@@ -64,11 +64,30 @@ function bandSeries(name: string, band: Band, colour: string) {
   }
 }
 
+/** Height of the drawing between its axes, as the wrapper makes it, and of a line of text, in pixels. */
+const drawingPixels = 320
+const textPixels = 15
+
+/**
+ * How far labels at the right end move so that none covers another: ascending depths in, pixels downwards out.
+ *
+ * The line of the chart keeps its place as far as it can; those above are pushed up.
+ */
+export function spreadLabels(depths: readonly number[], micrometresPerPixel: number): readonly number[] {
+  let last = -Infinity
+  return depths.map(depth => {
+    const natural = depth / micrometresPerPixel
+    const place = Math.max(natural, last + textPixels)
+    last = place
+    return natural - place
+  })
+}
+
 /** A dashed edge whose end carries the band's name: labels stand where the eye is. */
-function edgeSeries(label: string, band: Band, theme: ChartTheme) {
+function edgeSeries(label: string, band: Band, offset: number, theme: ChartTheme) {
   return {
     type: 'line' as const, name: label, silent: true, showSymbol: false, z: 2, data: band.map(([x, , upper]) => [x, upper]), lineStyle: { width: 1, type: 'dashed' as const, color: theme.light, opacity: 0.55 },
-    endLabel: { show: band.length > 0, formatter: label, color: theme.inkSoft, fontSize: 12 }, labelLayout: { moveOverlap: 'shiftY' as const },
+    endLabel: { show: band.length > 0, formatter: label, color: theme.inkSoft, fontSize: 12, offset: [0, offset] },
   }
 }
 
@@ -103,6 +122,13 @@ export function workingCurveOption(chart: WorkingCurveChart, theme: ChartTheme):
   const percent = `${formatNumber(100 * chart.confidenceLevel, Number.isInteger(Math.round(1000 * chart.confidenceLevel) / 10) ? 0 : 1)} %`
   const [inner, outer] = [bandOf(chart.line, 'confidence'), bandOf(chart.line, 'prediction')]
   const text = { color: theme.inkSoft, fontFamily: theme.fontNumber, fontSize: 12 }
+  const perPixel = (depth.max - depth.min) / drawingPixels
+  const end = (band: Band) => band.at(-1)?.[2] ?? 0
+  const lineEnd = chart.line.at(-1)?.depth ?? 0
+  const [lineOffset, meanOffset, oneOffset] = spreadLabels([lineEnd, end(inner), end(outer)], perPixel)
+  // Its label is broken into two lines below the line's own, unless its end is far away.
+  const otherEnd = chart.otherLine?.samples.at(-1)?.depth ?? 0
+  const otherOffset = Math.abs(otherEnd - lineEnd) / perPixel < 4 * textPixels ? (otherEnd <= lineEnd ? 2 : -3) * textPixels : 0
   const byId = new Map(chart.points.map(point => [point.id, point]))
   return {
     animation: theme.motion, animationDuration: 160, animationDurationUpdate: 160,
@@ -131,11 +157,11 @@ export function workingCurveOption(chart: WorkingCurveChart, theme: ChartTheme):
     series: [
       bandSeries('one new film', outer, theme.lightBandOuter),
       bandSeries('mean', inner, theme.lightBand),
-      edgeSeries(`one film, ${percent}`, outer, theme),
-      edgeSeries(`mean, ${percent}`, inner, theme),
+      edgeSeries(`one film, ${percent}`, outer, oneOffset ?? 0, theme),
+      edgeSeries(`mean, ${percent}`, inner, meanOffset ?? 0, theme),
       {
         type: 'line', name: 'fit', silent: true, showSymbol: false, z: 3, data: chart.line.map(sample => [at(sample.exposure), sample.depth]), lineStyle: { width: 2.5, color: theme.light },
-        endLabel: { show: true, formatter: 'straight line', color: theme.light, fontSize: 12, fontWeight: 'bold' }, labelLayout: { moveOverlap: 'shiftY' },
+        endLabel: { show: chart.line.length > 0, formatter: 'straight line', color: theme.light, fontSize: 12, fontWeight: 'bold', offset: [0, lineOffset ?? 0] },
         ...(chart.targetDepth === null ? {} : {
           markLine: {
             silent: true, symbol: 'none', animation: false, lineStyle: { color: theme.action, type: 'dashed', width: 1.5 },
@@ -150,7 +176,7 @@ export function workingCurveOption(chart: WorkingCurveChart, theme: ChartTheme):
       ...(chart.otherLine === null ? [] : [{
         type: 'line' as const, name: chart.otherLine.label, silent: true, showSymbol: false, z: 4, data: chart.otherLine.samples.map(sample => [at(sample.exposure), sample.depth]),
         lineStyle: { width: 2, color: theme.form, type: 'dotted' as const },
-        endLabel: { show: true, formatter: chart.otherLine.label.toLowerCase(), color: theme.form, fontSize: 12, fontWeight: 'bold' as const, width: 110, overflow: 'break' as const }, labelLayout: { moveOverlap: 'shiftY' as const },
+        endLabel: { show: true, formatter: chart.otherLine.label.toLowerCase(), color: theme.form, fontSize: 12, fontWeight: 'bold' as const, width: 110, overflow: 'break' as const, offset: [0, otherOffset] },
       }]),
       ...pointSeries(chart, theme, Math.max(0, depth.min)),
       {

@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest'
 import type { ChartTheme } from '@/components/charts/chart-theme.ts'
 import { logTicks } from '@/components/charts/log-ticks.ts'
-import { workingCurveOption, type WorkingCurveChart } from '@/components/film/working-curve-option.ts'
+import { spreadLabels, workingCurveOption, type WorkingCurveChart } from '@/components/film/working-curve-option.ts'
 
 const theme: ChartTheme = {
   ink: 'ink', inkSoft: 'soft', line: 'line', lineStrong: 'strong', surface: 'surface', light: 'light', lightBand: 'inner', lightBandOuter: 'outer',
@@ -75,5 +75,12 @@ describe('logTicks', () => {
     expect(logTicks(1.4, 9, 8)).toEqual([1.5, 2, 2.5, 3, 4, 5, 6, 8])
     expect(logTicks(0.5, 500, 8)).toEqual([1, 3, 10, 30, 100, 300])
     expect(logTicks(1.4, 9, 3).length).toBeLessThanOrEqual(3)
+  })
+})
+
+describe('spreadLabels', () => {
+  it('leaves labels that are far apart where they are, and pushes those that touch up by what is missing', () => {
+    expect(spreadLabels([100, 200, 300], 1)).toEqual([0, 0, 0])
+    expect(spreadLabels([100, 101, 102], 1)).toEqual([0, -14, -28])
   })
 })
