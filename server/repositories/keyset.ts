@@ -18,15 +18,20 @@ export const byTime = (column: { getSQL(): SQL }): SortKey => ({
   type: 'text',
 })
 
-const cursorSchema = z.tuple([z.string().max(400), z.uuid()])
+/** Sort, value and id of the last row: a cursor of one order means nothing in another. PostgreSQL holds no zero byte. */
+const cursorSchema = z.tuple([z.string().max(60), z.string().max(400).refine(text => !text.includes('\0')), z.uuid()])
 
-function decode(cursor: string | undefined): readonly [string, string] | null {
+const foreignCursor = () => new AppError('bad-request', { detail: 'This cursor was not made by this list. Start from the first page.' })
+
+function decode(cursor: string | undefined, sort: string): readonly [string, string] | null {
   if (cursor === undefined) return null
   try {
-    return cursorSchema.parse(JSON.parse(Buffer.from(cursor, 'base64url').toString('utf8')))
+    const [madeFor, value, id] = cursorSchema.parse(JSON.parse(Buffer.from(cursor, 'base64url').toString('utf8')))
+    if (madeFor === sort) return [value, id]
   } catch {
-    throw new AppError('bad-request', { detail: 'This cursor was not made by this list. Start from the first page.' })
+    // Answered below, as a cursor of another list is.
   }
+  throw foreignCursor()
 }
 
 export interface Keyset {
@@ -38,8 +43,8 @@ export interface Keyset {
 }
 
 /** What a query needs to answer one page: rows after the cursor, in order, one more than fits. */
-export function keyset(key: SortKey, id: SQL | { getSQL(): SQL }, page: { descending: boolean; cursor?: string | undefined; limit: number }): Keyset {
-  const cursor = decode(page.cursor)
+export function keyset(key: SortKey, id: SQL | { getSQL(): SQL }, page: { sort: string; descending: boolean; cursor?: string | undefined; limit: number }): Keyset {
+  const cursor = decode(page.cursor, page.sort)
   const value = cursor === null ? null : key.type === 'float8' ? numberOf(cursor[0]) : sql`${cursor[0]}::text`
   const compare = page.descending ? sql.raw('<') : sql.raw('>')
   const direction = page.descending ? sql.raw('desc') : sql.raw('asc')
@@ -53,17 +58,17 @@ export function keyset(key: SortKey, id: SQL | { getSQL(): SQL }, page: { descen
 
 function numberOf(text: string): SQL {
   const value = Number(text)
-  if (!Number.isFinite(value)) throw new AppError('bad-request', { detail: 'This cursor was not made by this list. Start from the first page.' })
+  if (!Number.isFinite(value)) throw foreignCursor()
   return sql`${value}::float8`
 }
 
 /** Cuts the one row too many off and makes the cursor of the next page. */
-export function pageOf<Row extends { readonly id: string; readonly sortKey: string }>(rows: readonly Row[], limit: number): { items: Omit<Row, 'sortKey'>[]; nextCursor: string | null } {
-  const kept = rows.slice(0, limit)
+export function pageOf<Row extends { readonly id: string; readonly sortKey: string }>(rows: readonly Row[], query: { readonly sort: string; readonly limit: number }): { items: Omit<Row, 'sortKey'>[]; nextCursor: string | null } {
+  const kept = rows.slice(0, query.limit)
   const last = kept.at(-1)
   return {
     items: kept.map(({ sortKey: _key, ...row }) => row),
-    nextCursor: rows.length > limit && last !== undefined ? Buffer.from(JSON.stringify([last.sortKey, last.id])).toString('base64url') : null,
+    nextCursor: rows.length > query.limit && last !== undefined ? Buffer.from(JSON.stringify([query.sort, last.sortKey, last.id])).toString('base64url') : null,
   }
 }
 

@@ -34,7 +34,7 @@ export async function listPairings(
   const rows = await database
     .select({ ...columns, sortKey: keys.sortKey }).from(pairing).innerJoin(printer, ofPrinter).innerJoin(resin, ofResin)
     .where(and(filter, keys.after)).orderBy(...keys.orderBy).limit(keys.rowsWanted)
-  const page = pageOf(rows, query.limit)
+  const page = pageOf(rows, query)
   const [counted] = await joined(database).where(filter)
   return { items: page.items.map(instantsToText), nextCursor: page.nextCursor, total: counted?.n ?? 0 }
 }
@@ -51,10 +51,9 @@ export async function findPairing(database: Executor, shopId: string, things: { 
   return row === undefined ? null : instantsToText(row)
 }
 
-/** @returns false when the two are paired already */
-export async function insertPairing(database: Executor, { shopId, id }: ThingKey, values: { printerId: string; resinId: string; notes: string }): Promise<boolean> {
-  const made = await database.insert(pairing).values({ ...values, id, shopId }).onConflictDoNothing({ target: [pairing.shopId, pairing.printerId, pairing.resinId] }).returning({ id: pairing.id })
-  return made.length > 0
+/** Fails with the constraint `pairing_unique` when the two are paired already. */
+export async function insertPairing(database: Executor, { shopId, id }: ThingKey, values: { printerId: string; resinId: string; notes: string }): Promise<void> {
+  await database.insert(pairing).values({ ...values, id, shopId })
 }
 
 export const changePairing = (database: Executor, key: ThingKey, change: VersionedChange<{ notes: string }>) => changeVersioned(database, pairing, key, change)

@@ -36,7 +36,7 @@ export async function listPrinters(database: Executor, shopId: string, query: Li
     query.q === undefined ? undefined : sql`(${printer.name} ilike ${containing(query.q)} or ${printer.notes} ilike ${containing(query.q)})`,
   )
   const rows = await database.select({ ...columns, sortKey: keys.sortKey }).from(printer).where(and(filter, keys.after)).orderBy(...keys.orderBy).limit(keys.rowsWanted)
-  const page = pageOf(rows, query.limit)
+  const page = pageOf(rows, query)
   return { items: page.items.map(instantsToText), nextCursor: page.nextCursor, total: await database.$count(printer, filter) }
 }
 

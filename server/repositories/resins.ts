@@ -22,7 +22,7 @@ export async function listResins(database: Executor, shopId: string, query: List
     query.q === undefined ? undefined : sql`(${resin.name} ilike ${containing(query.q)} or ${resin.description} ilike ${containing(query.q)})`,
   )
   const rows = await database.select({ ...resinColumns, sortKey: keys.sortKey }).from(resin).where(and(filter, keys.after)).orderBy(...keys.orderBy).limit(keys.rowsWanted)
-  const page = pageOf(rows, query.limit)
+  const page = pageOf(rows, query)
   return { items: page.items.map(instantsToText), nextCursor: page.nextCursor, total: await database.$count(resin, filter) }
 }
 
@@ -55,7 +55,7 @@ export async function listLots(database: Executor, shopId: string, query: ListQu
     query.q === undefined ? undefined : sql`(${lot.code} ilike ${containing(query.q)} or exists (select 1 from ${resin} where ${ofSameShop} and ${resin.name} ilike ${containing(query.q)}))`,
   )
   const rows = await database.select({ ...lotColumns, sortKey: keys.sortKey }).from(lot).innerJoin(resin, ofSameShop).where(and(filter, keys.after)).orderBy(...keys.orderBy).limit(keys.rowsWanted)
-  const page = pageOf(rows, query.limit)
+  const page = pageOf(rows, query)
   return { items: page.items.map(instantsToText), nextCursor: page.nextCursor, total: await database.$count(lot, filter) }
 }
 

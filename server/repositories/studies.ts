@@ -71,7 +71,7 @@ export async function listStudies(database: Executor, shopId: string, query: Stu
   const rows = await database
     .select({ ...columns, sortKey: keys.sortKey }).from(study).innerJoin(pairing, ofPairing).innerJoin(printer, ofPrinter).innerJoin(resin, ofResin).leftJoin(lot, ofLot)
     .where(and(filter, keys.after)).orderBy(...keys.orderBy).limit(keys.rowsWanted)
-  const page = pageOf(rows, query.limit)
+  const page = pageOf(rows, query)
   const [counted] = await database
     .select({ n: sql<number>`count(*)::int` }).from(study).innerJoin(pairing, ofPairing).innerJoin(printer, ofPrinter).innerJoin(resin, ofResin).leftJoin(lot, ofLot).where(filter)
   return { items: page.items.map(toStudy), nextCursor: page.nextCursor, total: counted?.n ?? 0 }

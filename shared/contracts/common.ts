@@ -2,7 +2,8 @@ import { z } from 'zod'
 
 export const idSchema = z.uuid()
 export const instantSchema = z.iso.datetime({ offset: true })
-export const dateSchema = z.iso.date()
+/** A day from 1900 on: an earlier one is a typing slip, and PostgreSQL knows no year 0. */
+export const dateSchema = z.iso.date().refine(day => day >= '1900-01-01', 'From 1900 on.')
 
 /** Names of things: column `name` is varchar(120). */
 export const nameSchema = z.string().trim().min(1, 'Give it a name.').max(120, 'At most 120 characters.')
@@ -30,9 +31,9 @@ export const shopParamsSchema = z.object({ shopId: idSchema })
 
 export const listStateSchema = z.enum(['active', 'retired', 'all']).default('active')
 
-/** Cursor paging: the cursor is opaque, made by the server. */
+/** Cursor paging: the cursor is opaque, made by the server. It holds a name of up to 120 characters, each of up to 6 bytes. */
 export const pageQuerySchema = z.object({
-  cursor: z.string().max(500).optional(),
+  cursor: z.string().max(1500).optional(),
   limit: z.coerce.number().int().min(1).max(200).default(50),
 })
 

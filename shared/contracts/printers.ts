@@ -10,7 +10,7 @@ const printerFields = {
   plateWidthMillimetres: positiveSchema.max(5000),
   plateDepthMillimetres: positiveSchema.max(5000),
   /** The finest change of exposure the printer takes. */
-  exposureStepSeconds: positiveSchema.max(60, 'At most 60 s.'),
+  exposureStepSeconds: z.number().min(0.001, 'At least 0.001 s.').max(60, 'At most 60 s.'),
   exposureSecondsMin: positiveSchema.max(3600),
   exposureSecondsMax: positiveSchema.max(3600),
   /** Known only where somebody has metered it; turns seconds into mJ/cm². */
