@@ -61,12 +61,14 @@ export function versionedThing<T extends Thing, New extends object, Change exten
   const audit = (database: Executor, actor: ShopActor, entry: { action: string; thingId: string; before?: unknown; after?: unknown }) =>
     recordAudit(database, { id: dependencies.newId(), shopId: actor.shopId, actorUserId: actor.userId, thing: word, ...entry })
 
-  async function change(actor: ShopActor, id: string, edit: { baseVersion: number; set: Change & { retiredAt?: Date | null }; action: string }): Promise<T> {
+  async function change(database: Executor, actor: ShopActor, id: string, edit: { baseVersion: number; set: Change & { retiredAt?: Date | null }; action: string }): Promise<T> {
     const key = { shopId: actor.shopId, id }
-    return meaningfully(() => dependencies.database.transaction(async transaction => {
+    return meaningfully(() => database.transaction(async transaction => {
       const before = await storage.read(transaction, key)
       if (before === null) throw notFound(word)
       if (before.version !== edit.baseVersion) throw staleEdit(word, before)
+      // Retired twice, or restored twice: it is so already, and the history tells it once.
+      if (edit.set.retiredAt !== undefined && (edit.set.retiredAt === null) === (before.retiredAt === null)) return before
       await storage.checkChange?.(transaction, actor, before, edit.set)
       if (!(await storage.change(transaction, key, edit))) throw staleEdit(word, await storage.read(transaction, key))
       const after = await storage.read(transaction, key)
@@ -97,12 +99,13 @@ export function versionedThing<T extends Thing, New extends object, Change exten
       }))
     },
 
-    update: (actor: ShopActor, id: string, edit: { baseVersion: number; set: Change }): Promise<T> => change(actor, id, { ...edit, action: 'changed' }),
+    update: (actor: ShopActor, id: string, edit: { baseVersion: number; set: Change }): Promise<T> => change(dependencies.database, actor, id, { ...edit, action: 'changed' }),
 
     retire: (actor: ShopActor, id: string, baseVersion: number): Promise<T> =>
-      change(actor, id, { baseVersion, set: { retiredAt: dependencies.clock() } as Change & { retiredAt: Date }, action: 'retired' }),
+      change(dependencies.database, actor, id, { baseVersion, set: { retiredAt: dependencies.clock() } as Change & { retiredAt: Date }, action: 'retired' }),
 
-    restore: (actor: ShopActor, id: string, baseVersion: number): Promise<T> =>
-      change(actor, id, { baseVersion, set: { retiredAt: null } as Change & { retiredAt: null }, action: 'restored' }),
+    /** In the transaction handed in, or one of its own. */
+    restore: (actor: ShopActor, id: string, baseVersion: number, database: Executor = dependencies.database): Promise<T> =>
+      change(database, actor, id, { baseVersion, set: { retiredAt: null } as Change & { retiredAt: null }, action: 'restored' }),
   }
 }
