@@ -51,7 +51,7 @@ export async function installPackages() {
     // Somebody may have installed by hand; npm ci would only do the same again.
     if (!isInstalled(JSON.parse(text), existsSync(record) ? JSON.parse(readFileSync(record, 'utf8')) : null)) {
       await step('installing npm packages from the lockfile (about a minute)', async () => {
-        const { status, output } = await runChild('npm', ['ci', '--no-audit', '--no-fund', '--include=dev', '--include=optional'], { cwd: root })
+        const { status, output } = await runChild('npm', ['ci', '--no-audit', '--no-fund', '--include=dev', '--include=optional'], { cwd: root, hardAfterMilliseconds: 1_000 })
         if (status !== 0) throw new Error(`npm ci failed:\n${output}`)
       })
     }
