@@ -30,6 +30,28 @@ export function saySignIns(demo) {
 }
 
 /**
+ * What a person can act on in the end of a log: sentences, without the places in the code they came from.
+ *
+ * @param {readonly string[]} lines
+ * @returns {string[]} at most eight
+ */
+export function readableWords(lines) {
+  const readable = lines.map(line => {
+    if (!line.startsWith('{')) return line
+    try {
+      const { msg, err } = JSON.parse(line)
+      return [msg, err?.message].filter(part => typeof part === 'string').join(': ')
+    } catch {
+      return line
+    }
+  })
+  // Node's own report of an error: the line of code, a caret below it, the stack, its version.
+  const noise = /^(\s+at |Node\.js v|file:\/\/|\/\S+:\d+$|node:internal|\s*throw |\s*\^+\s*$|\s*$)/
+  const kept = readable.filter(line => !noise.test(line))
+  return (kept.length > 0 ? kept : [...lines]).slice(-8)
+}
+
+/**
  * Starts the server and waits until it says that it listens.
  *
  * It stands in a process group of its own, so that Ctrl-C reaches only us and the order of closing is ours; it ends by
@@ -56,7 +78,7 @@ export function startServer({ environment, logFile, started }) {
   const keep = line => {
     appendFileSync(logFile, `${line}\n`)
     lastWords.push(line)
-    if (lastWords.length > 8) lastWords.shift()
+    if (lastWords.length > 60) lastWords.shift()
   }
   return new Promise((resolve, reject) => {
     let ready = false
@@ -73,7 +95,7 @@ export function startServer({ environment, logFile, started }) {
     child.once('error', reject)
     // Not "exit": by then its last words may still be under way.
     child.once('close', (code, signal) => {
-      reject(new Error(`The server ended by itself (${signal ?? `code ${code}`}). Its log (${logFile}) ends with:\n${lastWords.join('\n')}`))
+      reject(new Error(`The server ended by itself (${signal ?? `code ${code}`}). Its last words, from ${logFile}:\n${readableWords(lastWords).join('\n')}`))
     })
   })
 }
