@@ -1,4 +1,4 @@
-import { formatNumber } from '../format.ts'
+import { formatNumber, significantDecimals } from '../format.ts'
 import type { RulerScale } from './ruler-scale.ts'
 import type { RulerTick } from './types.ts'
 
@@ -44,5 +44,5 @@ export function rulerTicks(scale: RulerScale, step: number, options: { readonly 
   return placed
     .sort((a, b) => a.x - b.x)
     .map(({ x, exposure }) =>
-      labelled.has(x) ? { x, exposure, length: tickLengths.label, label: formatNumber(exposure, exposure >= 10 && Number.isInteger(exposure) ? 0 : decimals) } : { x, exposure, length: tickLengths.plain })
+      labelled.has(x) ? { x, exposure, length: tickLengths.label, label: formatNumber(exposure, exposure >= 10 && Number.isInteger(exposure) ? 0 : Math.min(decimals, Math.max(0, significantDecimals(exposure, 3)))) } : { x, exposure, length: tickLengths.plain })
 }

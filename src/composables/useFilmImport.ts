@@ -1,4 +1,4 @@
-import { proxy, releaseProxy, wrap } from 'comlink'
+import { proxy, releaseProxy, wrap, type Remote } from 'comlink'
 import { v7 } from 'uuid'
 import { computed, onScopeDispose, shallowRef } from 'vue'
 import { findImportMapping, type FilmImportMapping, type ImportBatch } from '#shared/contracts/film-imports.ts'
@@ -21,11 +21,18 @@ export type ImportState =
 
 /** One CSV file on its way in: opened, mapped, previewed and sent; the reading happens in a worker. */
 export function useFilmImport(place: () => StudyPlace, exposureKind: () => 'seconds' | 'mJ/cm2', onImported: () => void) {
-  const worker = new Worker(new URL('../workers/import-worker.ts', import.meta.url), { type: 'module' })
-  const handle = wrap<ImportWorker>(worker)
+  let started: { readonly worker: Worker; readonly handle: Remote<ImportWorker> } | null = null
+  /** Only who chooses a file loads what reads it. */
+  function reader(): Remote<ImportWorker> {
+    if (started === null) {
+      const worker = new Worker(new URL('../workers/import-worker.ts', import.meta.url), { type: 'module' })
+      started = { worker, handle: wrap<ImportWorker>(worker) }
+    }
+    return started.handle
+  }
   onScopeDispose(() => {
-    handle[releaseProxy]()
-    worker.terminate()
+    started?.handle[releaseProxy]()
+    started?.worker.terminate()
   })
 
   const file = shallowRef<File | null>(null)
@@ -46,7 +53,7 @@ export function useFilmImport(place: () => StudyPlace, exposureKind: () => 'seco
     remembered.value = false
     batchId = v7()
     state.value = { kind: 'opening' }
-    const outcome = await handle.open(next, exposureKind(), {})
+    const outcome = await reader().open(next, exposureKind(), {})
     if (mine !== turn) return
     if (outcome.kind === 'refused') {
       state.value = outcome
@@ -68,7 +75,7 @@ export function useFilmImport(place: () => StudyPlace, exposureKind: () => 'seco
     const mine = ++turn
     if (file.value === null || mapping.value === null) return
     state.value = { kind: 'reading', share: 0, rows: 0 }
-    const outcome = await handle.preview(file.value, { ...mapping.value }, exposureKind(), proxy((share: number, rows: number) => {
+    const outcome = await reader().preview(file.value, { ...mapping.value }, exposureKind(), proxy((share: number, rows: number) => {
       if (mine === turn) state.value = { kind: 'reading', share, rows }
     }))
     if (mine !== turn) return
@@ -87,7 +94,7 @@ export function useFilmImport(place: () => StudyPlace, exposureKind: () => 'seco
     mapping.value = { ...mapping.value, ...change }
     batchId = v7()
     if (change.encoding !== undefined || change.delimiter !== undefined) {
-      const outcome = await handle.open(file.value, exposureKind(), { encoding: mapping.value.encoding, delimiter: mapping.value.delimiter })
+      const outcome = await reader().open(file.value, exposureKind(), { encoding: mapping.value.encoding, delimiter: mapping.value.delimiter })
       if (outcome.kind === 'opened') opened.value = outcome
     }
     await read()

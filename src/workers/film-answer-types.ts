@@ -1,14 +1,9 @@
 import type { FilmSettings } from '#shared/contracts/studies.ts'
 import type {
-  ComparisonOutcome, CompleteRule, Estimate, ExposureFromProven, Finding, FilmModelName, FilmReadingState, Interval, PrintThrough,
+  ComparisonOutcome, CompleteRule, Estimate, ExposureFromProven, Finding, FilmModelName, FilmReadingState, Interval, PrinterLimits, PrintThrough,
 } from '#shared/film/index.ts'
 
-/** What the printer can do, in the unit of the study's exposures; null where only an irradiance could tell. */
-export interface PrinterLimits {
-  readonly step: number | null
-  readonly min: number | null
-  readonly max: number | null
-}
+export type { PrinterLimits }
 
 /** What of a study the answer rests on, beside the readings. */
 export interface FilmQuestion {

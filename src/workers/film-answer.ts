@@ -1,11 +1,11 @@
 import { filmFitInputs, layerRuleOf } from '#shared/contracts/film-fit-inputs.ts'
 import type { FilmSettings } from '#shared/contracts/studies.ts'
 import {
-  answerFindings, compareLayerRules, depthAt, exposureForLayer, fitWorkingCurve, implausibleReadings,
-  type Finding, type WorkingCurveFit, type WorkingCurveOptions,
+  acceptedCurve, answerFindings, compareLayerRules, curveExposureForLayer, depthAt, exposureOnPrinter, fitWorkingCurve, implausibleReadings,
+  type AcceptedCurve, type Finding, type WorkingCurveFit, type WorkingCurveOptions,
 } from '#shared/film/index.ts'
-import { acceptedCurve, curveExposure, curveSamples, type AcceptedCurve } from './film-curves.ts'
-import type { ChartPoint, CurrentReading, CurveSample, FilmAnswer, FilmQuestion, LayerAnswers, PrinterLimits, ReadingCounts, ShownExposure } from './film-answer-types.ts'
+import { curveSamples } from './film-curves.ts'
+import type { ChartPoint, CurrentReading, CurveSample, FilmAnswer, FilmQuestion, LayerAnswers, ReadingCounts } from './film-answer-types.ts'
 
 /** More dots than this cover each other and cost the page its speed. */
 const chartPointsMax = 2000
@@ -14,14 +14,6 @@ const samples = 72
 /** The inputs of the fit: the same on the server, to the last digit. */
 export function filmInputs(question: FilmQuestion, readings: readonly CurrentReading[]): WorkingCurveOptions {
   return filmFitInputs({ exposureKind: question.exposureKind, film: question.film }, readings)
-}
-
-/** Rounds to the printer's step, inside what the printer can do. */
-export function onPrinter(value: number, printer: PrinterLimits): Pick<ShownExposure, 'step' | 'beyondPrinter'> {
-  const beyondPrinter = printer.min !== null && value < printer.min ? 'below' : printer.max !== null && value > printer.max ? 'above' : null
-  if (printer.step === null) return { step: null, beyondPrinter }
-  const inside = Math.min(printer.max ?? Infinity, Math.max(printer.min ?? 0, value))
-  return { step: Number((Math.max(1, Math.round(inside / printer.step)) * printer.step).toPrecision(12)), beyondPrinter }
 }
 
 export const rulesOf = (film: FilmSettings) => [
@@ -90,17 +82,16 @@ function chartPoints(readings: readonly CurrentReading[], marked: ReadonlySet<st
 
 function layerAnswers(fit: WorkingCurveFit, layerHeightMicrometres: number, { film, printer }: FilmQuestion): LayerAnswers {
   const { byRule, sentence } = compareLayerRules(fit, { layerHeightMicrometres, rules: rulesOf(film) })
-  return { layerHeightMicrometres, sentence, byRule: byRule.map(answer => ({ ...answer, ...onPrinter(answer.value, printer) })) }
+  return { layerHeightMicrometres, sentence, byRule: byRule.map(answer => ({ ...answer, ...exposureOnPrinter(answer.value, printer) })) }
 }
 
 function headlineOf(curve: AcceptedCurve, straight: WorkingCurveFit, question: FilmQuestion): Extract<FilmAnswer, { kind: 'fitted' }>['headline'] {
-  const rule = layerRuleOf(question.film)
   const { layerHeightMicrometres, printer } = question
-  const byLine = exposureForLayer(straight, { layerHeightMicrometres, rule })
-  if (curve.name === 'straight-line') return { ...byLine, ...onPrinter(byLine.value, printer) }
-  if (rule.kind === 'far-side-dose') return { kind: 'refused', detail: 'The rule of the far-side dose needs one Dp: choose another rule, or the straight line.' }
-  const answer = curveExposure(curve, byLine.depthMicrometres, straight.measuredRange)
-  return answer.kind === 'refused' ? answer : { ...answer, depthMicrometres: byLine.depthMicrometres, ...onPrinter(answer.value, printer) }
+  const answer = curveExposureForLayer(curve, straight, { layerHeightMicrometres, rule: layerRuleOf(question.film) })
+  if (answer.kind === 'refused') return answer
+  // The page tells a refusal by its kind.
+  const { kind: _answered, ...shown } = answer
+  return { ...shown, ...exposureOnPrinter(answer.value, printer) }
 }
 
 /** From below the thinnest film (where the curve starts) to beyond the thickest. */

@@ -1,9 +1,8 @@
 import {
-  censoredExposureForDepth, compareFilmModels, exposureForDepth, fitRobustWorkingCurve, workingCurveWithout, type WorkingCurveFit,
+  censoredExposureForDepth, compareFilmModels, exposureForDepth, fitRobustWorkingCurve, missingFilmLimit, withMissingFilms, workingCurveWithout, type WorkingCurveFit,
 } from '#shared/film/index.ts'
 import { filmInputs } from './film-answer.ts'
 import type { ComparisonsAnswer, CurrentReading, FilmComparisons, FilmQuestion } from './film-answer-types.ts'
-import { missingFilmLimit, withMissingFilms } from './film-curves.ts'
 
 /** Beyond this the bent curves take seconds, and with so many films the straight line's findings tell all there is. */
 const readingsMax = 5000

@@ -2,9 +2,9 @@ import { expose } from 'comlink'
 import { listFilmReadings, type StoredFilmReading } from '#shared/contracts/film.ts'
 import { getStudy, type Study } from '#shared/contracts/studies.ts'
 import { filmFitInputs } from '#shared/contracts/film-fit-inputs.ts'
-import { compareWorkingCurves, exposureFromProven, fitWorkingCurve, planFilmExposures, printThrough, type FilmPlan, type WorkingCurveFit } from '#shared/film/index.ts'
+import { compareWorkingCurves, exposureFromProven, exposureOnPrinter, fitWorkingCurve, planFilmExposures, printThrough, type FilmPlan, type WorkingCurveFit } from '#shared/film/index.ts'
 import { ApiError, OfflineError, call } from '@/api/call.ts'
-import { filmAnswer, onPrinter, rulesOf } from './film-answer.ts'
+import { filmAnswer, rulesOf } from './film-answer.ts'
 import type {
   ComparisonsAnswer, FilmAnswer, FilmQuestion, PrintThroughAnswer, PrinterLimits, ProvenAnswer, StudyComparisonAnswer,
 } from './film-answer-types.ts'
@@ -95,7 +95,7 @@ export const filmWorker = {
       kind: 'answered',
       byRule: rules.map(rule => {
         const answer = exposureFromProven({ ...rest, fit, rule, ...(provenStep === null ? {} : { provenStepSeconds: Math.min(provenStep, given.provenSeconds) }) })
-        return { ...answer, step: onPrinter(answer.value, question.printer).step }
+        return { ...answer, step: exposureOnPrinter(answer.value, question.printer).step }
       }),
     }
   },

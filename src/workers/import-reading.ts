@@ -97,7 +97,7 @@ export async function previewImportFile(
   for (let start = 0; start < file.size; start += pieceBytes) {
     if (!isCurrent()) return refuse('Another file or mapping was chosen.')
     const bytes = await file.slice(start, start + pieceBytes).arrayBuffer()
-    let text = ''
+    let text: string
     try {
       text = decoder.decode(bytes, { stream: start + pieceBytes < file.size })
     } catch {

@@ -52,13 +52,22 @@ export function verdictOf(study: Study, answer: FilmAnswer | null, printer: Prin
   if ('kind' in headline) return { ...nothing, what: headline.detail, remarks, next: 'Choose the straight line or another rule.' }
   const sureness = surenessOf(headline, printer, answer.numbers.degreesOfFreedom)
   const decided = headline.meanInterval.kind === 'finite'
+  if (study.exposureKind === 'mJ/cm2' && headline.step !== null) remarks.push(`The step in seconds rests on the printer’s irradiance, ${study.printer.irradianceMilliwattsPerSquareCentimetre} mW/cm², taken as exact.`)
   if (headline.beyondPrinter !== null) remarks.push(`This is ${headline.beyondPrinter === 'below' ? 'less than' : 'more than'} the printer can expose; its nearest step is shown.`)
   return {
-    use: !decided ? null : headline.step === null ? formatExposure(headline.value, study.exposureKind) : `${formatNumber(headline.step, decimalsOf(printer.step ?? 0.01))} ${unit}`,
+    use: !decided ? null : headline.step === null ? formatExposure(headline.value, study.exposureKind) : stepText(headline.step, study),
     estimate: formatEstimate({ value: headline.value, interval: headline.meanInterval }, { unit }),
     what: `for ${formatLength(study.layerHeightMicrometres)} layers, ${ruleLabel(study.film)}; ${formatNumber(100 * study.film.confidenceLevel, 0)} % interval of the mean film`,
     sureness, remarks, next: nextStep(study, answer, sureness, plannedLeft),
   }
+}
+
+/** A printer step as the printer is told it: in seconds, also where the study counts mJ/cm². */
+export function stepText(step: number, study: Pick<Study, 'exposureKind' | 'printer'>): string {
+  const { exposureStepSeconds, irradianceMilliwattsPerSquareCentimetre: irradiance } = study.printer
+  const decimals = decimalsOf(exposureStepSeconds)
+  if (study.exposureKind === 'seconds') return `${formatNumber(step, decimals)} s`
+  return irradiance === null ? formatExposure(step, study.exposureKind) : `${formatNumber(step / irradiance, decimals)} s`
 }
 
 /** Decimals of a printer step: 0.05 has two. */

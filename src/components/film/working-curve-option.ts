@@ -37,6 +37,9 @@ function depthAxis(chart: WorkingCurveChart): { readonly min: number; readonly m
     low = Math.min(low, point.depth)
     high = Math.max(high, point.depth)
   }
+  // The line ends inside the frame, so that its label stands there; a band as wide as the sky may leave it.
+  const lineEnd = chart.line.at(-1)?.depth ?? 0
+  high = Math.max(high, lineEnd, Math.min(bandOf(chart.line, 'prediction').at(-1)?.[2] ?? 0, 1.3 * lineEnd))
   const unit = high > 600 ? 200 : high > 250 ? 100 : high > 120 ? 50 : 20
   return { min: Math.floor(low / unit) * unit, max: Math.ceil((high * 1.06) / unit) * unit }
 }
@@ -134,7 +137,6 @@ export function workingCurveOption(chart: WorkingCurveChart, theme: ChartTheme):
     animation: theme.motion, animationDuration: 160, animationDurationUpdate: 160,
     backgroundColor: 'transparent',
     textStyle: { fontFamily: theme.fontText, color: theme.ink },
-    aria: { enabled: false },
     grid: { left: 56, right: 118, top: 18, bottom: 46 },
     xAxis: {
       type: 'value', min: at(exposure.min), max: at(exposure.max), name: chart.exposureKind === 'seconds' ? 'Exposure (s), log scale' : 'Radiant exposure (mJ/cm²), log scale',
