@@ -112,7 +112,9 @@ function endGroup(child, hardAfterMilliseconds) {
  */
 export function runChild(command, parameters, { cwd, env, show = false, minutesMax = 60, hardAfterMilliseconds = 5_000, mayOutlive = false } = {}) {
   if (ending) return Promise.reject(new ClosingError('closing'))
-  const child = spawn(command, parameters, { cwd, env, stdio: show ? ['ignore', 'inherit', 'inherit'] : ['ignore', 'pipe', 'pipe'], detached: true })
+  // Output that we may show later, in whatever surroundings, comes without colours.
+  const environment = show ? env : { ...(env ?? process.env), NO_COLOR: '1', FORCE_COLOR: undefined }
+  const child = spawn(command, parameters, { cwd, env: environment, stdio: show ? ['ignore', 'inherit', 'inherit'] : ['ignore', 'pipe', 'pipe'], detached: true })
   if (child.pid !== undefined) {
     running.set(child.pid, { child, hardAfterMilliseconds })
     if (!mayOutlive) ourKeeper().tell('group', child.pid)
