@@ -38,6 +38,13 @@ export type {
   DeadTimeFit, FilmModelFit, FilmModelRefusal, ModelDepth, ModelExposure, ModelExposureOutcome, ModelPoint, QuadraticFit, TwoLineFit,
 } from './film-model-types.ts'
 
+// The curve that a study answers with, and what a printer can do of the answer
+export {
+  acceptedCurve, curveExposure, curveExposureForLayer, missingFilmLimit, withMissingFilms,
+  type AcceptedCurve, type CurveChoice, type CurveExposure, type CurveExposureOutcome,
+} from './accepted-curve.ts'
+export { exposureOnPrinter, type ExposureOnPrinter, type PrinterLimits } from './exposure-on-printer.ts'
+
 // Films that are far off, uncertain in exposure, or missing
 export { fitRobustWorkingCurve, type RobustWorkingCurve, type RobustWorkingCurveOutcome } from './fit-robust-working-curve.ts'
 export { fitWorkingCurveYork, type YorkWorkingCurve, type YorkWorkingCurveOptions, type YorkWorkingCurveOutcome } from './fit-working-curve-york.ts'
