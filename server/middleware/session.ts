@@ -15,6 +15,9 @@ declare module 'express-session' {
 export const sessionDays = 30
 export const sessionCookieName = 'fanlight.sid'
 
+/** Sessions are kept by the real clock, as their store keeps them. */
+export const dayInUtc = (): string => new Date().toISOString().slice(0, 10)
+
 /** Sessions live in PostgreSQL, so that any server knows them; only signed-in people have one. */
 export function sessionMiddleware(config: Config, pool: pg.Pool): RequestHandler[] {
   const Store = connectPgSimple(session)
@@ -30,7 +33,7 @@ export function sessionMiddleware(config: Config, pool: pg.Pool): RequestHandler
   })
   const prolong: RequestHandler = (request, _response, next) => {
     if (request.session.userId !== undefined) {
-      const today = new Date().toISOString().slice(0, 10)
+      const today = dayInUtc()
       // Setting a field marks the session as changed: saved with a new expiry.
       if (request.session.touchedOn !== today) request.session.touchedOn = today
     }

@@ -2,7 +2,7 @@ import type { Request, Response } from 'express'
 import type { Session } from '#shared/contracts/session.ts'
 import * as contract from '#shared/contracts/session.ts'
 import type { Dependencies } from '../dependencies.ts'
-import { sessionCookieName } from '../middleware/session.ts'
+import { dayInUtc, sessionCookieName } from '../middleware/session.ts'
 import { issueCsrfToken } from '../middleware/csrf.ts'
 import { rateLimitCaller } from '../middleware/rate-limit.ts'
 import * as people from '../services/people.ts'
@@ -13,6 +13,7 @@ import type { Binder } from './binder.ts'
 export async function startSession(request: Request, userId: string): Promise<void> {
   await new Promise<void>((resolve, reject) => request.session.regenerate(error => (error ? reject(error) : resolve())))
   request.session.userId = userId
+  request.session.touchedOn = dayInUtc()
   await new Promise<void>((resolve, reject) => request.session.save(error => (error ? reject(error) : resolve())))
 }
 

@@ -1,8 +1,9 @@
-import { eq } from 'drizzle-orm'
-import { afterAll, beforeAll, describe, expect, it } from 'vitest'
+import argon2 from 'argon2'
+import { eq, sql } from 'drizzle-orm'
+import { afterAll, beforeAll, describe, expect, it, vi } from 'vitest'
 import { auditEvent, session, user } from '#db/schema/index.ts'
 import { createShop } from '#shared/contracts/members.ts'
-import { changePassword, getSession, signIn, updateAccount } from '#shared/contracts/session.ts'
+import { changePassword, getSession, signIn, signUp, updateAccount } from '#shared/contracts/session.ts'
 import { startTestApp, testPassword, type TestApp } from '#tests/helpers/test-app.ts'
 
 let app: TestApp
@@ -164,5 +165,49 @@ describe('further shops', () => {
     expect(answer.memberships.map(({ shopName, role }) => ({ shopName, role }))).toEqual([{ shopName: 'Second shop', role: 'owner' }])
     const events = await app.database.select().from(auditEvent).where(eq(auditEvent.shopId, answer.memberships[0]?.shopId ?? ''))
     expect(events.map(event => [event.action, event.thing, event.actorUserId])).toEqual([['created', 'shop', answer.user?.id]])
+  })
+})
+
+describe('the time it takes', () => {
+  it('tells nothing: known and unknown addresses cost one check of a password to sign in, one hash to sign up', async () => {
+    const person = await app.makePerson()
+    const verify = vi.spyOn(argon2, 'verify')
+    const hash = vi.spyOn(argon2, 'hash')
+    const [mine, nobody] = [app.visitor(), app.visitor()]
+    for (const [agent, email] of [[mine, person.email], [nobody, 'unknown@quillmere.example']] as const) {
+      verify.mockClear()
+      hash.mockClear()
+      await agent.refused(signIn, { body: { email, password: 'not the right one' } })
+      expect([verify.mock.calls.length, hash.mock.calls.length], email).toEqual([1, 0])
+      expect(verify.mock.calls[0]?.[0], 'the same strength').toMatch(/^\$argon2id\$v=19\$m=19456,t=2,p=1\$/)
+      await agent.ok(signUp, { body: { email, displayName: 'N', shopName: 'S', password: testPassword } })
+      expect([verify.mock.calls.length, hash.mock.calls.length], email).toEqual([1, 1])
+    }
+    verify.mockRestore()
+    hash.mockRestore()
+  })
+})
+
+describe('a session', () => {
+  it('lasts thirty days from the last day it was used, and is written once a day', async () => {
+    const person = await app.makePerson()
+    const agent = await app.signedIn(person)
+    const sid = await sidOf(person.userId)
+    const expiry = async () => (await app.database.select({ expire: session.expire }).from(session).where(eq(session.sid, sid)))[0]?.expire
+    const daysAhead = ((await expiry())?.getTime() ?? 0) - Date.now()
+    expect(daysAhead / 86_400_000).toBeCloseTo(30, 1)
+
+    expect((await agent.call(getSession)).cookies.filter(line => line.startsWith('fanlight.sid')), 'later the same day').toEqual([])
+    await app.database.update(session).set({ sess: sql`jsonb_set(${session.sess}::jsonb, '{touchedOn}', '"2026-01-01"')::json`, expire: new Date(Date.now() + 86_400_000) }).where(eq(session.sid, sid))
+    const answer = await agent.call(getSession)
+    expect(cookieNamed(answer.cookies, 'fanlight.sid')).toMatch(/; Expires=/)
+    expect((((await expiry())?.getTime() ?? 0) - Date.now()) / 86_400_000).toBeCloseTo(30, 1)
+  })
+
+  it('whose time is over opens nothing', async () => {
+    const person = await app.makePerson()
+    const agent = await app.signedIn(person)
+    await app.database.update(session).set({ expire: new Date(Date.now() - 1000) }).where(eq(session.sid, await sidOf(person.userId)))
+    expect((await agent.session()).user).toBeNull()
   })
 })
