@@ -63,18 +63,22 @@ function canInstallFromDebian() {
   return process.getuid?.() === 0 && existsSync('/usr/bin/apt-get')
 }
 
+/** @param {readonly string[]} packages the first of them that this Debian or Ubuntu has */
 async function aptInstall(packages) {
   const env = { ...process.env, DEBIAN_FRONTEND: 'noninteractive' }
   // Broken off half-way the package system would ask for repair: it may take its time to end.
   const apt = parameters => runChild('apt-get', ['-o', 'DPkg::Lock::Timeout=300', ...parameters], { env, hardAfterMilliseconds: 120_000, mayOutlive: true })
-  const install = () => apt(['install', '-y', '--no-install-recommends', ...packages])
-  let result = await install()
-  if (result.status !== 0) {
-    // A fresh machine has no list of packages yet, an old one a stale list.
-    await apt(['update'])
-    result = await install()
+  let output = ''
+  // A fresh machine has no list of packages yet, an old one a stale list.
+  for (const withNewList of [false, true]) {
+    if (withNewList) await apt(['update'])
+    for (const name of packages) {
+      const result = await apt(['install', '-y', '--no-install-recommends', name])
+      if (result.status === 0) return
+      output = result.output
+    }
   }
-  if (result.status !== 0) throw new Error(`apt-get could not install ${packages.join(' ')}:\n${result.output}`)
+  throw new Error(`apt-get could not install ${packages.join(' or ')}:\n${output}`)
 }
 
 /** Makes sure of PostgreSQL's server programs. */
@@ -89,7 +93,7 @@ export async function installPostgres() {
       mkdirSync('/etc/postgresql-common', { recursive: true })
       writeFileSync('/etc/postgresql-common/createcluster.conf', 'create_main_cluster = false\n')
     }
-    await aptInstall(['postgresql-15'])
+    await aptInstall(['postgresql-15', 'postgresql'])
   })
   if (findPostgresPrograms() === null) throw new Error('PostgreSQL was installed, yet its server programs are not found in /usr/lib/postgresql or on the PATH.')
 }
