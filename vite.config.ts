@@ -7,8 +7,9 @@ const apiPort = process.env.FANLIGHT_API_PORT ?? '3000'
 export default defineConfig({
   plugins: [vue()],
   resolve: { alias: { '@': fileURLToPath(new URL('./src', import.meta.url)) } },
-  worker: { format: 'es' },
-  build: { target: 'es2022', manifest: true },
+  // Licence notices stand once, in dist/licenses.md, instead of before each of hundreds of modules.
+  worker: { format: 'es', rolldownOptions: { output: { comments: { legal: false } } } },
+  build: { target: 'es2022', manifest: true, license: { fileName: 'licenses.md' }, rolldownOptions: { output: { comments: { legal: false } } } },
   server: { proxy: { '/api': { target: `http://127.0.0.1:${apiPort}` } } },
   test: {
     projects: [
