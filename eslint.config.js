@@ -89,6 +89,8 @@ export default defineConfig(
       'vue/component-api-style': ['error', ['script-setup']],
       'vue/define-macros-order': ['error', { order: ['defineProps', 'defineEmits', 'defineModel', 'defineSlots'] }],
       'vue/define-props-declaration': ['error', 'type-based'],
+      // An optional prop that is not given is undefined, and its type says so.
+      'vue/require-default-prop': 'off',
       'vue/max-attributes-per-line': 'off',
       'vue/singleline-html-element-content-newline': 'off',
       'vue/html-self-closing': 'off',
