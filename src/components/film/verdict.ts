@@ -1,13 +1,26 @@
 import { formatEstimate, formatExposure, formatLength, formatNumber } from '#shared/format.ts'
 import type { RulerContent } from '#shared/ruler/index.ts'
 import type { Study } from '#shared/contracts/studies.ts'
-import type { FilmAnswer, PrinterLimits, ShownExposure } from '@/workers/film-answer-types.ts'
+import type { ChartPoint, FilmAnswer, PrinterLimits, ShownExposure } from '@/workers/film-answer-types.ts'
 import { ruleLabel } from './film-words.ts'
 
 type Sureness = { readonly word: string; readonly kind: 'good' | 'caution' | 'serious' | 'info'; readonly sentence: string }
 
-/** More than these many dots would be a bar. */
-const dotsMax = 300
+/** A ruler piles so many films of one exposure; more exposures than this would be a bar. */
+const dotsPerExposure = 4
+const exposuresMax = 120
+
+/** Films for the ruler: few of each exposure, and the whole range of exposures. */
+function dotsOf(points: readonly ChartPoint[]): readonly ChartPoint[] {
+  const taken = new Map<number, number>()
+  const dots = points.filter(({ exposure }) => {
+    const before = taken.get(exposure) ?? 0
+    taken.set(exposure, before + 1)
+    return before < dotsPerExposure
+  })
+  const stride = Math.ceil(taken.size / exposuresMax)
+  return stride <= 1 ? dots : dots.filter((_, i) => i % stride === 0)
+}
 
 /** Upper over lower end of the interval, as "within 6 %": half the spread on the log scale. */
 function halfWidthPercent(answer: ShownExposure): number | null {
@@ -19,7 +32,8 @@ function halfWidthPercent(answer: ShownExposure): number | null {
 export function surenessOf(answer: ShownExposure, printer: PrinterLimits, degreesOfFreedom: number): Sureness {
   const percent = halfWidthPercent(answer)
   if (percent === null) return { word: 'Not determined.', kind: 'serious', sentence: 'The films do not limit the exposure on both sides yet.' }
-  const within = `The interval is ± ${formatNumber(percent, percent < 9.95 ? 1 : 0)} % wide.`
+  // Beyond a doubling a percentage says less than a factor; below the digits shown it would read as nothing at all.
+  const within = percent > 100 ? `The interval spans a factor of ${formatNumber(1 + percent / 100, 1)} either way.` : percent < 0.05 ? 'The interval is within ± 0.1 %.' : `The interval is ± ${formatNumber(percent, percent < 9.95 ? 1 : 0)} % wide.`
   if (answer.extrapolated) return { word: 'Outside the films.', kind: 'caution', sentence: `${within} The depth lies outside what was measured.` }
   const { meanInterval: interval } = answer
   const steps = printer.step !== null && interval.kind === 'finite' ? (interval.upper - interval.lower) / printer.step : null
@@ -31,10 +45,10 @@ export function surenessOf(answer: ShownExposure, printer: PrinterLimits, degree
 
 function nextStep(study: Study, answer: FilmAnswer, sureness: Sureness | null, plannedLeft: number): string {
   if (plannedLeft > 0) return `Expose and measure the ${plannedLeft === 1 ? 'last planned film' : `${plannedLeft} planned films still open`}.`
-  if (answer.kind === 'refused') return answer.detail
+  if (answer.kind === 'refused' && answer.implausible.length === 0) return answer.detail
   if (answer.implausible.length > 0) return `Look at the ${answer.implausible.length === 1 ? 'marked film' : `${answer.implausible.length} marked films`} again: measure once more, or exclude with a reason.`
   if (sureness?.kind === 'serious') return 'Plan more films around the depth wanted.'
-  if (sureness?.word === 'Outside the films.') return `Add films near ${formatLength('kind' in answer.headline ? study.layerHeightMicrometres : answer.headline.depthMicrometres)}.`
+  if (answer.kind === 'fitted' && sureness?.word === 'Outside the films.') return `Add films near ${formatLength('kind' in answer.headline ? study.layerHeightMicrometres : answer.headline.depthMicrometres)}.`
   return 'Confirm it with a print: films tell depth, not fine features.'
 }
 
@@ -85,7 +99,7 @@ export function rulerOf(study: Study, answer: FilmAnswer | null, printer: Printe
     exposureKind: study.exposureKind,
     step: printer.step,
     ...(range === undefined ? {} : { printerRange: range }),
-    dots: [...(answer?.points ?? []).slice(0, dotsMax).map(point => ({ exposure: point.exposure, state: states[point.state] })), ...planned.map(exposure => ({ exposure, state: 'planned' as const }))],
+    dots: [...dotsOf(answer?.points ?? []).map(point => ({ exposure: point.exposure, state: states[point.state] })), ...planned.map(exposure => ({ exposure, state: 'planned' as const }))],
     answer: headline === null ? null : { value: headline.value, interval: headline.meanInterval },
     chosenStep: headline === null || headline.meanInterval.kind !== 'finite' ? null : headline.step,
   }
