@@ -30,6 +30,7 @@ export const benchStudySchema = z.object({
       criticalExposure: benchEstimateSchema,
       /** Exposure for the study's layer height by its layer rule. */
       exposureForLayer: benchEstimateSchema,
+      /** What the printer can be set to; null where a dose has no irradiance to turn it into seconds. */
       exposureOnStepSeconds: z.number().nullable(),
       extrapolated: z.boolean(),
       findings: z.array(z.object({ severity: z.enum(['info', 'caution', 'serious']), sentence: z.string() })),
@@ -40,7 +41,7 @@ export type BenchStudy = z.infer<typeof benchStudySchema>
 
 /** One thing that waits for somebody, most urgent first. */
 export const attentionSchema = z.object({
-  kind: z.enum(['films-to-print', 'films-to-measure', 'film-fit-doubtful', 'lot-expired', 'lot-expires-soon', 'no-study-yet', 'decide']),
+  kind: z.enum(['films-to-print', 'films-to-measure', 'film-fit-doubtful', 'lot-expired', 'lot-expires-soon', 'rests-on-retired', 'no-study-yet', 'decide']),
   sentence: z.string(),
   studyId: idSchema.nullable(),
   pairingId: idSchema.nullable(),

@@ -1,4 +1,5 @@
 import { readFileSync } from 'node:fs'
+import { pino } from 'pino'
 import { v7 } from 'uuid'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { eq } from 'drizzle-orm'
@@ -96,7 +97,7 @@ describe('the demo shop', () => {
     expect(planned).toHaveLength(3)
     // The second films of two exposures are still to come, and the bench says so.
     const [shopRow] = await test.database.select({ id: shop.id }).from(shop)
-    const { pairings, attention } = benchSchema.parse(await benchOf({ database: test.database, clock: () => now }, { userId: v7(), displayName: '', email: '', role: 'owner', shopId: shopRow?.id ?? '' }))
+    const { pairings, attention } = benchSchema.parse(await benchOf({ database: test.database, clock: () => now, logger: pino({ level: 'silent' }) }, { userId: v7(), displayName: '', email: '', role: 'owner', shopId: shopRow?.id ?? '' }))
     const summary = pairings.flatMap(shown => shown.studies).find(shown => shown.name === 'Model sand at 25 µm')
     expect(summary).toMatchObject({ filmsMeasured: 4, filmsPlanned: 3 })
     expect(attention.map(item => item.kind)).toEqual(expect.arrayContaining(['films-to-measure', 'film-fit-doubtful', 'lot-expires-soon', 'no-study-yet']))
