@@ -4,6 +4,7 @@ import { createInterface } from 'node:readline'
 import { AxeBuilder } from '@axe-core/playwright'
 import { chromium, type Browser, type BrowserContext, type Page } from 'playwright-core'
 import { expect } from 'vitest'
+import { z } from 'zod'
 import { createTestDatabase, type TestDatabase } from '#tests/helpers/test-database.ts'
 
 const chromiumArguments = [
@@ -129,4 +130,23 @@ export async function linkFromMail(visitor: Visitor, to: string): Promise<string
     await new Promise(resolve => setTimeout(resolve, 250))
   }
   throw new Error(`no mail to ${to} was caught`)
+}
+
+const traceSchema = z.object({
+  traceEvents: z.array(z.object({ name: z.string(), ph: z.string(), pid: z.number(), tid: z.number(), dur: z.number().optional(), tdur: z.number().optional(), args: z.unknown() })),
+})
+
+/**
+ * The longest task of the page's main thread while `work` goes on: in time of the processor, which does not grow when other
+ * programs keep the machine busy, and as the clock on the wall had it.
+ */
+export async function longestTask(stage: Stage, page: Page, work: () => Promise<void>): Promise<{ cpuMilliseconds: number; wallMilliseconds: number }> {
+  await stage.browser.startTracing(page, { categories: ['disabled-by-default-devtools.timeline', 'toplevel', '__metadata'] })
+  await work()
+  const { traceEvents } = traceSchema.parse(JSON.parse((await stage.browser.stopTracing()).toString()))
+  const mainThreads = new Set(traceEvents.filter(event => event.name === 'thread_name' && JSON.stringify(event.args).includes('CrRendererMain')).map(({ pid, tid }) => `${pid}/${tid}`))
+  const tasks = traceEvents.filter(event => event.ph === 'X' && event.name.endsWith('RunTask') && mainThreads.has(`${event.pid}/${event.tid}`))
+  if (tasks.length < 10) throw new Error(`the trace holds ${tasks.length} tasks of a page's main thread`)
+  const longest = (times: readonly (number | undefined)[]) => times.reduce<number>((most, time) => Math.max(most, time ?? 0), 0) / 1000
+  return { cpuMilliseconds: longest(tasks.map(({ tdur }) => tdur)), wallMilliseconds: longest(tasks.map(({ dur }) => dur)) }
 }
