@@ -3,7 +3,7 @@ import { mkdirSync } from 'node:fs'
 import { createInterface } from 'node:readline'
 import { AxeBuilder } from '@axe-core/playwright'
 import { chromium, type Browser, type BrowserContext, type Page } from 'playwright-core'
-import { expect } from 'vitest'
+import { afterEach, expect } from 'vitest'
 import { z } from 'zod'
 import { createTestDatabase, type TestDatabase } from '#tests/helpers/test-database.ts'
 
@@ -56,11 +56,24 @@ function startServer(databaseUrl: string): Promise<{ child: ChildProcess; url: s
   })
 }
 
+const stages = new Set<Browser>()
+
+// What a failing test had on its screens.
+afterEach(async ({ task }) => {
+  if (task.result?.state !== 'fail') return
+  const pages = [...stages].flatMap(browser => browser.contexts()).flatMap(context => context.pages())
+  for (const [i, page] of pages.entries()) {
+    const path = `${artifacts}/failed-${task.name.replace(/\W+/g, '-').slice(0, 80)}-${i + 1}.png`
+    await page.screenshot({ path, fullPage: true, timeout: 5000 }).catch(() => undefined)
+  }
+})
+
 export async function openStage(): Promise<Stage> {
   mkdirSync(artifacts, { recursive: true })
   const database = await createTestDatabase()
   const server = await startServer(database.url)
   const browser = await chromium.launch({ executablePath: process.env.CHROMIUM_PATH || '/usr/bin/chromium', args: chromiumArguments })
+  stages.add(browser)
   return {
     url: server.url, demo: server.demo, browser, database,
     async open({ theme = 'daylight', width = 1280, height = 900 } = {}) {
@@ -95,6 +108,7 @@ export async function openStage(): Promise<Stage> {
       }
     },
     async close() {
+      stages.delete(browser)
       await browser.close()
       server.child.removeAllListeners('exit')
       const ended = new Promise(resolve => server.child.once('exit', resolve))

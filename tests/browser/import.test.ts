@@ -19,8 +19,8 @@ afterAll(() => stage.close())
 /** A study without films in seconds: each test has one of its own. */
 async function openNewStudy(name: string): Promise<string> {
   await visitor.goto(`/shop/${shopId}/studies/new`)
-  await page.getByLabel('Printer', { exact: false }).first().selectOption({ label: 'North bench' })
-  await page.getByLabel('Resin', { exact: false }).first().selectOption({ label: 'Model sand' })
+  await page.getByRole('combobox', { name: /^Printer/ }).selectOption({ label: 'North bench' })
+  await page.getByRole('combobox', { name: /^Resin/ }).selectOption({ label: 'Model sand' })
   await page.getByLabel('Name', { exact: false }).last().fill(name)
   await page.getByRole('button', { name: 'Open the study' }).click()
   await page.waitForURL(/studies\/[0-9a-f-]{36}/)

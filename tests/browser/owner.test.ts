@@ -41,9 +41,9 @@ it('a new owner comes from sign-up to an exposure for a layer height that was ne
 
   // Study.
   await page.getByRole('link', { name: 'Bench', exact: true }).click()
-  await page.getByRole('link', { name: 'Open a study' }).first().click()
-  await page.getByLabel('Printer', { exact: false }).first().selectOption({ label: 'First printer' })
-  await page.getByLabel('Resin', { exact: false }).first().selectOption({ label: 'Casting green' })
+  await page.getByRole('region', { name: 'First steps' }).getByRole('link', { name: 'Open a study' }).click()
+  await page.getByRole('combobox', { name: /^Printer/ }).selectOption({ label: 'First printer' })
+  await page.getByRole('combobox', { name: /^Resin/ }).selectOption({ label: 'Casting green' })
   expect(await page.getByLabel('Name', { exact: false }).last().inputValue()).toBe('Casting green on First printer at 50 µm')
   await page.getByRole('button', { name: 'Open the study' }).click()
 
