@@ -4,7 +4,7 @@ import type { RulerContent, RulerGeometry, RulerSize, RulerSpan } from './types.
 
 const shapes: Readonly<Record<RulerSize, { height: number; strip: number; side: number; dot: number; tickGap: number; labelGap: number }>> = {
   list: { height: 34, strip: 14, side: 6, dot: 2.5, tickGap: 9, labelGap: 46 },
-  study: { height: 86, strip: 40, side: 12, dot: 4.5, tickGap: 7, labelGap: 48 },
+  study: { height: 76, strip: 40, side: 12, dot: 4.5, tickGap: 7, labelGap: 48 },
   print: { height: 72, strip: 32, side: 10, dot: 3.5, tickGap: 7, labelGap: 52 },
 }
 /** Dots of one exposure stand on each other, up to so many. */

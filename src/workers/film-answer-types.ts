@@ -43,7 +43,8 @@ export interface ShownExposure {
 
 export interface LayerAnswers {
   readonly layerHeightMicrometres: number
-  readonly byRule: readonly (ShownExposure & { readonly rule: CompleteRule })[]
+  /** `refusal`: why the accepted curve has no answer; the numbers are then the straight line's. */
+  readonly byRule: readonly (ShownExposure & { readonly rule: CompleteRule; readonly refusal: string | null })[]
   readonly sentence: string
 }
 

@@ -35,7 +35,7 @@ export function filmAnswer(question: FilmQuestion, readings: readonly CurrentRea
   if (straight.kind === 'refused') return { answer: { ...base, kind: 'refused', reason: straight.reason, detail: straight.detail }, fit: null }
   const curve = acceptedCurve(inputs, straight, question.film)
   const heights = [question.layerHeightMicrometres, ...(question.otherLayerHeightMicrometres === null ? [] : [question.otherLayerHeightMicrometres])]
-  const layers = heights.map(height => layerAnswers(straight, height, question))
+  const layers = heights.map(height => layerAnswers(curve, straight, height, question))
   const headline = headlineOf(curve, straight, question)
   const exposures = sampledExposures(straight, question, 'kind' in headline ? null : headline.value)
   return {
@@ -73,16 +73,28 @@ function countsOf(readings: readonly CurrentReading[]): ReadingCounts {
 function chartPoints(readings: readonly CurrentReading[], marked: ReadonlySet<string>): { points: readonly ChartPoint[]; pointsLeftOff: number } {
   const stride = Math.max(1, Math.ceil(readings.length / chartPointsMax))
   // An odd film must be seen, however many there are.
-  const shown = stride === 1 ? readings : readings.filter((reading, i) => i % stride === 0 || marked.has(reading.id)).slice(0, 2 * chartPointsMax)
+  const chosen = stride === 1 ? readings : readings.filter((reading, i) => i % stride === 0 || marked.has(reading.id))
+  const again = Math.ceil(chosen.length / (2 * chartPointsMax))
+  const shown = again <= 1 ? chosen : chosen.filter((_, i) => i % again === 0)
   return {
     points: shown.map(({ id, exposure, depthMicrometres, state }) => ({ id, exposure, depth: depthMicrometres ?? 0, state, marked: marked.has(id) })),
     pointsLeftOff: readings.length - shown.length,
   }
 }
 
-function layerAnswers(fit: WorkingCurveFit, layerHeightMicrometres: number, { film, printer }: FilmQuestion): LayerAnswers {
-  const { byRule, sentence } = compareLayerRules(fit, { layerHeightMicrometres, rules: rulesOf(film) })
-  return { layerHeightMicrometres, sentence, byRule: byRule.map(answer => ({ ...answer, ...exposureOnPrinter(answer.value, printer) })) }
+/** Every rule by the accepted curve; a rule that this curve cannot answer says why and has the straight line's numbers. */
+function layerAnswers(curve: AcceptedCurve, straight: WorkingCurveFit, layerHeightMicrometres: number, { film, printer }: FilmQuestion): LayerAnswers {
+  const { byRule, sentence } = compareLayerRules(straight, { layerHeightMicrometres, rules: rulesOf(film) })
+  return {
+    layerHeightMicrometres,
+    sentence: curve.name === 'straight-line' ? sentence : `By the straight line: ${sentence}`,
+    byRule: byRule.map(line => {
+      const answer = curveExposureForLayer(curve, straight, { layerHeightMicrometres, rule: line.rule })
+      const { rule } = line
+      if (answer.kind === 'refused') return { ...line, ...exposureOnPrinter(line.value, printer), rule, refusal: answer.detail }
+      return { ...answer, ...exposureOnPrinter(answer.value, printer), rule, refusal: null }
+    }),
+  }
 }
 
 function headlineOf(curve: AcceptedCurve, straight: WorkingCurveFit, question: FilmQuestion): Extract<FilmAnswer, { kind: 'fitted' }>['headline'] {

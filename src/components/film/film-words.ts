@@ -12,6 +12,15 @@ export const curveLabels: Readonly<Record<CurveName, string>> = {
   'with-missing-films': 'Straight line with missing films',
 }
 
+/** The same, short enough for the end of a line on the chart. */
+export const curveShortLabels: Readonly<Record<CurveName, string>> = {
+  'straight-line': 'straight line',
+  'dead-time': 'dead time',
+  quadratic: 'bent curve',
+  'two-line': 'two kinds of light',
+  'with-missing-films': 'with missing films',
+}
+
 /** What each curve assumes, for those who must choose. */
 export const curveExplanations: Readonly<Record<CurveName, string>> = {
   'straight-line': 'depth = Dp · ln(E / Ec): even absorption and one threshold.',

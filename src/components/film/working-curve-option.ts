@@ -68,7 +68,7 @@ function bandSeries(name: string, band: Band, colour: string) {
 }
 
 /** Height of the drawing between its axes, as the wrapper makes it, and of a line of text, in pixels. */
-const drawingPixels = 320
+const drawingPixels = 304
 const textPixels = 15
 
 /**
@@ -128,16 +128,17 @@ export function workingCurveOption(chart: WorkingCurveChart, theme: ChartTheme):
   const perPixel = (depth.max - depth.min) / drawingPixels
   const end = (band: Band) => band.at(-1)?.[2] ?? 0
   const lineEnd = chart.line.at(-1)?.depth ?? 0
-  const [lineOffset, meanOffset, oneOffset] = spreadLabels([lineEnd, end(inner), end(outer)], perPixel)
-  // Its label is broken into two lines below the line's own, unless its end is far away.
-  const otherEnd = chart.otherLine?.samples.at(-1)?.depth ?? 0
-  const otherOffset = Math.abs(otherEnd - lineEnd) / perPixel < 4 * textPixels ? (otherEnd <= lineEnd ? 2 : -3) * textPixels : 0
+  const ends = [lineEnd, end(inner), end(outer), ...(chart.otherLine === null ? [] : [chart.otherLine.samples.at(-1)?.depth ?? 0])]
+  const upwards = ends.map((_, i) => i).sort((a, b) => (ends[a] ?? 0) - (ends[b] ?? 0))
+  const spread = spreadLabels(upwards.map(i => ends[i] ?? 0), perPixel)
+  const offsetOf = (i: number) => spread[upwards.indexOf(i)] ?? 0
+  const [lineOffset, meanOffset, oneOffset, otherOffset] = [0, 1, 2, 3].map(offsetOf)
   const byId = new Map(chart.points.map(point => [point.id, point]))
   return {
     animation: theme.motion, animationDuration: 160, animationDurationUpdate: 160,
     backgroundColor: 'transparent',
     textStyle: { fontFamily: theme.fontText, color: theme.ink },
-    grid: { left: 56, right: 118, top: 18, bottom: 46 },
+    grid: { left: 56, right: 122, top: 34, bottom: 46 },
     xAxis: {
       type: 'value', min: at(exposure.min), max: at(exposure.max), name: chart.exposureKind === 'seconds' ? 'Exposure (s), log scale' : 'Radiant exposure (mJ/cm²), log scale',
       nameLocation: 'middle', nameGap: 30, nameTextStyle: { color: theme.inkSoft },
@@ -178,7 +179,7 @@ export function workingCurveOption(chart: WorkingCurveChart, theme: ChartTheme):
       ...(chart.otherLine === null ? [] : [{
         type: 'line' as const, name: chart.otherLine.label, silent: true, showSymbol: false, z: 4, data: chart.otherLine.samples.map(sample => [at(sample.exposure), sample.depth]),
         lineStyle: { width: 2, color: theme.form, type: 'dotted' as const },
-        endLabel: { show: true, formatter: chart.otherLine.label.toLowerCase(), color: theme.form, fontSize: 12, fontWeight: 'bold' as const, width: 110, overflow: 'break' as const, offset: [0, otherOffset] },
+        endLabel: { show: true, formatter: chart.otherLine.label, color: theme.form, fontSize: 12, fontWeight: 'bold' as const, offset: [0, otherOffset ?? 0] },
       }]),
       ...pointSeries(chart, theme, Math.max(0, depth.min)),
       {
