@@ -2,7 +2,7 @@ import { fieller } from '../stats/fieller.ts'
 import { moverSum, negate, type Ranged } from '../stats/mover.ts'
 import { tQuantile, tTwoSidedTail } from '../stats/quantiles.ts'
 import { StatsError, type Interval, type Refused } from '../stats/types.ts'
-import { exponentiate } from './exponentiate.ts'
+import { exponentiate } from '../stats/exponentiate.ts'
 import { exposureForDepth } from './exposure-for-depth.ts'
 import type { WorkingCurveFit } from './types.ts'
 

@@ -1,7 +1,7 @@
 import { fieller } from '../stats/fieller.ts'
 import { tQuantile } from '../stats/quantiles.ts'
 import { StatsError, type Interval } from '../stats/types.ts'
-import { exponentiate } from './exponentiate.ts'
+import { exponentiate } from '../stats/exponentiate.ts'
 import type { ExposureForDepth, WorkingCurveFit } from './types.ts'
 
 /** Residual variance of one new film of a depth, by the weights of the fit. */

@@ -1,7 +1,7 @@
 import { circleExtremes } from '../stats/circle-extremes.ts'
 import { tQuantile } from '../stats/quantiles.ts'
 import type { Interval } from '../stats/types.ts'
-import { exponentiate } from './exponentiate.ts'
+import { exponentiate } from '../stats/exponentiate.ts'
 import { exposureForDepth, singleFilmVariance } from './exposure-for-depth.ts'
 import { checkLayerHeight, completeRule, type CompleteRule, type LayerRuleChoice } from './layer-rules.ts'
 import type { WorkingCurveFit } from './types.ts'

@@ -1,7 +1,7 @@
 import { moverSum, negate, type Ranged } from '../stats/mover.ts'
 import { StatsError, type Interval } from '../stats/types.ts'
 import { depthAt } from './depth-at.ts'
-import { exponentiate } from './exponentiate.ts'
+import { exponentiate } from '../stats/exponentiate.ts'
 import { checkLayerHeight, completeRule, type CompleteRule, type LayerRuleChoice } from './layer-rules.ts'
 import type { WorkingCurveFit } from './types.ts'
 

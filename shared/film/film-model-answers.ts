@@ -1,7 +1,7 @@
 import { tQuantile } from '../stats/quantiles.ts'
 import { StatsError, type Interval } from '../stats/types.ts'
 import { profileDeadTime, type DeadTimeProfile } from './dead-time-profile.ts'
-import { exponentiate } from './exponentiate.ts'
+import { exponentiate } from '../stats/exponentiate.ts'
 import type { DeadTimeFit, FilmModelFit, ModelDepth, ModelExposureOutcome } from './film-model-types.ts'
 import { logAttenuation, twoLineDepth, twoLineGradient, twoLineParts } from './two-line-depth.ts'
 

@@ -3,7 +3,7 @@ import { tQuantile } from '../stats/quantiles.ts'
 import { smoothProfileEnds } from '../stats/smooth-profile-ends.ts'
 import { StatsError, type Estimate, type Interval, type Refused } from '../stats/types.ts'
 import { collectCensoredFilms, type CensoredFilms } from './censored-films.ts'
-import { exponentiate } from './exponentiate.ts'
+import { exponentiate } from '../stats/exponentiate.ts'
 import type { ExposureKind, FilmReading, WorkingCurveRefusal } from './types.ts'
 
 export interface CensoredWorkingCurve {

@@ -4,7 +4,7 @@ import { moverSum } from '../stats/mover.ts'
 import { normalQuantile, tQuantile } from '../stats/quantiles.ts'
 import { StatsError, type Estimate, type Interval, type Refused } from '../stats/types.ts'
 import { collectFilms } from './collect-films.ts'
-import { exponentiate } from './exponentiate.ts'
+import { exponentiate } from '../stats/exponentiate.ts'
 import type { ExposureKind, FilmReading, WorkingCurveRefusal } from './types.ts'
 
 export interface YorkWorkingCurveOptions {

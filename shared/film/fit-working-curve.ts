@@ -5,7 +5,7 @@ import { fitStraightLine, type StraightLine } from '../stats/straight-line.ts'
 import { StatsError, type Interval } from '../stats/types.ts'
 import { collectFilms, type Film } from './collect-films.ts'
 import { curvatureOf } from './curvature.ts'
-import { exponentiate } from './exponentiate.ts'
+import { exponentiate } from '../stats/exponentiate.ts'
 import { filmFindings } from './film-findings.ts'
 import type { ExposureKind, FilmPoint, FilmReading, FilmWeighting, WorkingCurveFit, WorkingCurveOutcome, WorkingCurveRefusal } from './types.ts'
 

@@ -7,6 +7,7 @@ import { seededRandom, type RandomSource } from '#shared/stats/index.ts'
 import { reportFilmCurves } from './film-curves-coverage.ts'
 import { reportFilmLines } from './film-lines-coverage.ts'
 import { reportFilm } from './film-report.ts'
+import { reportGraded, reportPlanner, reportWindow } from './window-report.ts'
 
 type Report = (options: { sets: number; random: RandomSource; print: (text: string) => void }) => void
 
@@ -15,6 +16,9 @@ const sections: Readonly<Record<string, Report>> = {
   film: reportFilm,
   'film-curves': reportFilmCurves,
   'film-lines': reportFilmLines,
+  window: reportWindow,
+  graded: reportGraded,
+  planner: reportPlanner,
 }
 
 const { values, positionals } = parseArgs({

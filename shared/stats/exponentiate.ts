@@ -1,4 +1,4 @@
-import type { Interval } from '../stats/types.ts'
+import type { Interval } from './types.ts'
 
 /** Turns a set on ln exposure, given as distance from `shift`, into one of exposures; what overflows is unbounded. */
 export function exponentiate(interval: Interval, shift = 0): Interval {
