@@ -3,7 +3,7 @@ import { setTimeout as wait } from 'node:timers/promises'
 import { afterAll, afterEach, beforeAll, describe, expect, it } from 'vitest'
 import { demoPeople } from '#db/seed/index.ts'
 import { startFakeMailServer, type FakeMailServer } from '#server/mail/mailbox.ts'
-import { postAsVisitor, startServerProcess, type ServerProcess } from '#tests/helpers/server-process.ts'
+import { arriveAsVisitor, postAsVisitor, startServerProcess, type ServerProcess } from '#tests/helpers/server-process.ts'
 import { createTestDatabase, type TestDatabase } from '#tests/helpers/test-database.ts'
 
 let database: TestDatabase
@@ -21,13 +21,13 @@ afterAll(async () => {
   await database.drop()
 })
 
-async function start(environment: Readonly<Record<string, string>> = {}): Promise<ServerProcess> {
-  const one = await startServerProcess({ DATABASE_URL: database.url, ...environment })
+async function start(environment: Readonly<Record<string, string>> = {}, onLog?: (log: string) => void): Promise<ServerProcess> {
+  const one = await startServerProcess({ DATABASE_URL: database.url, ...environment }, onLog)
   processes.push(one)
   return one
 }
-const signUp = (server: ServerProcess, email: string) =>
-  postAsVisitor(server.ready.url, '/api/sign-ups', { email, displayName: 'Nell', shopName: 'Shop', password: 'a lamp and a lens' })
+const signUpOf = (email: string) => ({ email, displayName: 'Nell', shopName: 'Shop', password: 'a lamp and a lens' })
+const signUp = (server: ServerProcess, email: string) => postAsVisitor(server.ready.url, '/api/sign-ups', signUpOf(email))
 async function untilMailTo(email: string, seconds: number) {
   for (let i = 0; i < seconds * 20; i++) {
     const found = (await mailServer.list()).filter(mail => mail.to.includes(email))
@@ -71,9 +71,10 @@ describe('a server that is asked to close', () => {
   it.each(['SIGTERM', 'SIGINT'] as const)('by %s finishes the answer under way, closes idle connections and ends with 0', async signal => {
     const server = await start()
     await fetch(`${server.ready.url}/api/session`)
-    // Hashing a password takes long enough that the signal arrives in between.
-    const answers = Array.from({ length: 8 }, (_, i) => signUp(server, `closing-${signal}-${i}@quillmere.example`))
-    await wait(150)
+    const visitors = await Promise.all(Array.from({ length: 8 }, () => arriveAsVisitor(server.ready.url)))
+    const answers = visitors.map((post, i) => post('/api/sign-ups', signUpOf(`closing-${signal}-${i}@quillmere.example`)))
+    // Hashing passwords takes long enough that all have arrived and most are under way when the first is answered.
+    await Promise.race(answers)
     const began = Date.now()
     const code = await server.end(signal)
     expect(code).toBe(0)
@@ -127,8 +128,12 @@ describe('a server whose database goes away and comes back', () => {
     const target = new URL(database.url)
     const late = new URL(database.url)
     late.port = String(port)
-    const starting = start({ DATABASE_URL: late.toString() })
-    await wait(2500)
+    let hasLooked = () => {}
+    const looked = new Promise<void>(resolve => (hasLooked = resolve))
+    const starting = start({ DATABASE_URL: late.toString() }, log => {
+      if (log.includes('does not answer yet')) hasLooked()
+    })
+    await looked
     // PostgreSQL "comes up": a port that leads to the real one.
     const bridge = createServer(socket => {
       const upstream = connect(Number(target.port), target.hostname)

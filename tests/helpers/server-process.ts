@@ -13,8 +13,12 @@ export interface ServerProcess {
   end(signal: NodeJS.Signals): Promise<number | NodeJS.Signals | null>
 }
 
-/** The server as `npm start` runs it, as a process of its own, on a free port. */
-export async function startServerProcess(environment: Readonly<Record<string, string>>): Promise<ServerProcess> {
+/**
+ * The server as `npm start` runs it, as a process of its own, on a free port.
+ *
+ * @param onLog - told the whole log so far at each of its lines, also before the server is ready
+ */
+export async function startServerProcess(environment: Readonly<Record<string, string>>, onLog: (log: string) => void = () => {}): Promise<ServerProcess> {
   const child = spawn(process.execPath, ['--import', 'tsx', 'server/main.ts'], {
     env: {
       PATH: process.env.PATH, NODE_ENV: 'development', PORT: '0', SESSION_SECRET: 'a secret for tests, thirty-two characters long', PUBLIC_URL: 'http://fanlight.test',
@@ -23,7 +27,10 @@ export async function startServerProcess(environment: Readonly<Record<string, st
     stdio: ['pipe', 'pipe', 'pipe'],
   })
   let log = ''
-  child.stderr.on('data', (chunk: Buffer) => (log += chunk.toString()))
+  child.stderr.on('data', (chunk: Buffer) => {
+    log += chunk.toString()
+    onLog(log)
+  })
   const ended = new Promise<number | NodeJS.Signals | null>(resolve => child.once('exit', (code, signal) => resolve(code ?? signal)))
   const ready = await new Promise<z.infer<typeof readySchema>>((resolve, reject) => {
     createInterface({ input: child.stdout }).on('line', line => {
@@ -41,10 +48,16 @@ export async function startServerProcess(environment: Readonly<Record<string, st
   }
 }
 
-/** A browser's two steps for one write: token and cookie, then the call. */
-export async function postAsVisitor(url: string, path: string, body: unknown): Promise<Response> {
+/** A visitor who has the token and the cookie that a write needs. */
+export async function arriveAsVisitor(url: string): Promise<(path: string, body: unknown) => Promise<Response>> {
   const session = await fetch(`${url}/api/session`)
   const { csrfToken } = z.object({ csrfToken: z.string() }).parse(await session.json())
   const cookie = session.headers.get('set-cookie')?.split(';')[0] ?? ''
-  return fetch(`${url}${path}`, { method: 'POST', headers: { 'Content-Type': 'application/json', 'X-CSRF-Token': csrfToken, Cookie: cookie }, body: JSON.stringify(body) })
+  return (path, body) => fetch(`${url}${path}`, { method: 'POST', headers: { 'Content-Type': 'application/json', 'X-CSRF-Token': csrfToken, Cookie: cookie }, body: JSON.stringify(body) })
+}
+
+/** A browser's two steps for one write: token and cookie, then the call. */
+export async function postAsVisitor(url: string, path: string, body: unknown): Promise<Response> {
+  const post = await arriveAsVisitor(url)
+  return post(path, body)
 }
