@@ -1,3 +1,4 @@
+import { median, medianSlope } from '../stats/median-slope.ts'
 import type { FilmReading } from './types.ts'
 
 export interface Implausible {
@@ -10,13 +11,6 @@ const thinnestMicrometres = 5
 const thickestMicrometres = 2000
 /** In robust standard deviations: a faultless film is marked about once in 16,000. */
 const robustLimit = 4
-
-function median(values: readonly number[]): number {
-  const sorted = [...values].sort((a, b) => a - b)
-  const middle = Math.floor(sorted.length / 2)
-  const upper = sorted[middle] ?? 0
-  return sorted.length % 2 === 1 ? upper : (upper + (sorted[middle - 1] ?? 0)) / 2
-}
 
 /**
  * Readings that are probably slips of typing or of unit: they are kept and marked, never dropped.
@@ -42,10 +36,8 @@ export function implausibleReadings(readings: readonly FilmReading[]): readonly 
   const stride = Math.max(1, Math.ceil(usable.length / 200))
   const sample = usable.filter((_, i) => i % stride === 0)
   if (sample.length >= 5) {
-    const slopes: number[] = []
-    for (const [i, a] of sample.entries()) for (const b of sample.slice(i + 1)) if (a.x !== b.x) slopes.push((b.y - a.y) / (b.x - a.x))
-    if (slopes.length > 0) {
-      const slope = median(slopes)
+    if (sample.some(point => point.x !== sample[0]?.x)) {
+      const slope = medianSlope(sample.map(point => point.x), sample.map(point => point.y))
       const intercept = median(sample.map(point => point.y - slope * point.x))
       const distances = usable.map(point => point.y - intercept - slope * point.x)
       // 1.4826 turns the median distance into a standard deviation; 5 µm keeps very even films from raising alarms.

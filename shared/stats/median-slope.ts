@@ -1,11 +1,6 @@
-/** The middle value, or the mean of the two in the middle. */
-export function median(values: readonly number[]): number {
-  const sorted = [...values].sort((a, b) => a - b)
-  const middle = sorted.length / 2
-  return sorted.length % 2 === 0
-    ? ((sorted[middle - 1] ?? 0) + (sorted[middle] ?? 0)) / 2
-    : (sorted[Math.floor(middle)] ?? 0)
-}
+import { median } from 'simple-statistics'
+
+export { median }
 
 /**
  * Median of the slopes between two points (Theil and Sen): a start that far points cannot pull.
@@ -21,5 +16,6 @@ export function medianSlope(x: readonly number[], y: readonly number[]): number 
       if (run !== 0) slopes.push(((y[j] ?? 0) - (y[i] ?? 0)) / run)
     }
   }
-  return median(slopes)
+  // All points at one x have no slope.
+  return slopes.length === 0 ? 0 : median(slopes)
 }
