@@ -6,6 +6,7 @@ import { listCaughtMail } from '#shared/contracts/development.ts'
 import { problemSchema } from '#shared/contracts/error.ts'
 import { operations } from '#shared/contracts/index.ts'
 import type { Operation } from '#shared/contracts/operation.ts'
+import { plainImportMapping } from '#tests/helpers/film-shop.ts'
 import { startTestApp, type TestAnswer, type TestApp, type TestMember } from '#tests/helpers/test-app.ts'
 import { makeWholeShop, type WholeShop } from '#tests/helpers/whole-shop.ts'
 
@@ -30,6 +31,11 @@ const memberWith = (role: Role): TestMember => {
   const member = members.get(role)
   if (member === undefined) throw new Error(`no ${role}`)
   return member
+}
+const operationNamed = (id: string): Operation => {
+  const found = operations.find(operation => operation.id === id)
+  if (found === undefined) throw new Error(id)
+  return found
 }
 const codeOf = (answer: TestAnswer) => (answer.status < 400 ? null : problemSchema.parse(answer.body).code)
 
@@ -88,6 +94,14 @@ describe.each(inShop.map(operation => [operation.id, operation] as const))('%s',
     expect([answer.status, codeOf(answer)]).toEqual([401, 'sign-in-required'])
   })
 
+  if (operation.method === 'get') {
+    it('answers from its own shop alone', async () => {
+      const answer = await here.owner.agent.call(operation, { params: here.params })
+      expect(answer.status, answer.text.slice(0, 300)).toBe(200)
+      for (const [name, id] of Object.entries(there.params)) expect(answer.text, name).not.toContain(id)
+    })
+  }
+
   if (/:shopId.*:/.test(operation.path)) {
     it('does not reach a thing of another shop through one’s own shop', async () => {
       const before = await contentsOf(there.shopId)
@@ -100,10 +114,23 @@ describe.each(inShop.map(operation => [operation.id, operation] as const))('%s',
   }
 })
 
+describe('what a shop remembers of its files', () => {
+  it('is not told to another shop with the same header', async () => {
+    const header = ['exposure of yonder', 'thickness of yonder']
+    const [importFile, find] = [operationNamed('importFilmReadings'), operationNamed('findImportMapping')]
+    const made = await there.owner.agent.call(importFile, {
+      params: { ...there.params, batchId: '01890000-0000-7000-8000-000000000001' }, body: `${header.join(',')}\n5,0.5\n`, headers: { 'Content-Type': 'text/csv' },
+      query: { fileName: 'yonder.csv', mapping: JSON.stringify(plainImportMapping), header: JSON.stringify(header) },
+    })
+    expect(made.status, made.text).toBe(201)
+    expect((await there.owner.agent.call(find, { params: there.params, body: { header } })).body).toEqual({ mapping: plainImportMapping })
+    expect((await here.owner.agent.call(find, { params: here.params, body: { header } })).body).toEqual({ mapping: null })
+  })
+})
+
 describe('references in a body to things of another shop', () => {
   it.each(['createLot', 'createPairing', 'createStudy', 'updateStudy'])('%s refuses them', async id => {
-    const operation = operations.find(candidate => candidate.id === id)
-    if (operation === undefined) throw new Error(id)
+    const operation = operationNamed(id)
     const answer = await here.owner.agent.call(operation, { params: here.params, version: 1, body: there.bodies[id] })
     expect(answer.status, answer.text).toBe(422)
     expect(answer.text).not.toContain('Yonder')
@@ -140,6 +167,6 @@ describe('outside a shop', () => {
     const agent = await app.signedIn(person)
     await app.database.execute(sql`delete from "user" where id = ${person.userId}`)
     expect((await agent.session()).user).toBeNull()
-    expect((await agent.refused(operations.find(operation => operation.id === 'getShop') ?? listCaughtMail, { params: here.params })).code).toBe('sign-in-required')
+    expect((await agent.refused(operationNamed('getShop'), { params: here.params })).code).toBe('sign-in-required')
   })
 })

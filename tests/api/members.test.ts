@@ -63,6 +63,15 @@ describe('members', () => {
     }])
   })
 
+  it('have a role in each shop: a change in one leaves the other', async () => {
+    const [{ shopId, owner }, other] = [await app.makeShop(), await app.makeShop()]
+    const member = await app.makeMember(shopId, 'viewer')
+    await app.database.insert(membership).values({ shopId: other.shopId, userId: member.userId, role: 'technician' })
+    await owner.agent.ok(changeMemberRole, { params: { shopId, userId: member.userId }, body: { role: 'engineer' } })
+    const { memberships } = await member.agent.session()
+    expect(new Map(memberships.map(item => [item.shopId, item.role]))).toEqual(new Map([[shopId, 'engineer'], [other.shopId, 'technician']]))
+  })
+
   it('the same role again changes nothing and writes no history', async () => {
     const { shopId, owner } = await app.makeShop()
     const member = await app.makeMember(shopId, 'viewer')
