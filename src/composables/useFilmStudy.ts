@@ -33,14 +33,17 @@ export function useFilmStudy(place: () => StudyPlace, study: () => Study | undef
   const answer = useFilmAnswer(study, () => grid.over.value, ready, worker)
 
   let loading = 0
+  let busy = false
   async function load(): Promise<void> {
     const turn = ++loading
+    busy = true
     // A reload behind a page that already shows something must not blank it.
     if (readings.value.kind !== 'ready') readings.value = { kind: 'busy', loaded: 0, total: 0 }
     const outcome = await worker.load({ ...place() }, proxy((loaded: number, total: number) => {
       if (turn === loading && readings.value.kind === 'busy') readings.value = { kind: 'busy', loaded, total }
     }))
     if (turn !== loading) return
+    busy = false
     if (outcome.kind === 'failed') {
       if (readings.value.kind !== 'ready') readings.value = outcome
       return
@@ -48,16 +51,19 @@ export function useFilmStudy(place: () => StudyPlace, study: () => Study | undef
     await grid.refresh()
     readings.value = { kind: 'ready', readingsRevision: outcome.readingsRevision }
     generation.value++
+    loadIfBehind()
+  }
+  /** Somebody else's tablet, or an import, moved the readings on; a reading that is under way may already bring it. */
+  function loadIfBehind(): void {
+    const revision = study()?.readingsRevision
+    if (!busy && revision !== undefined && readings.value.kind === 'ready' && revision > readings.value.readingsRevision) void load()
   }
   watch(() => place().studyId, () => {
     readings.value = { kind: 'busy', loaded: 0, total: 0 }
     void load()
   }, { immediate: true })
 
-  // Somebody else's tablet moved the readings on.
-  watch(() => study()?.readingsRevision, revision => {
-    if (revision !== undefined && readings.value.kind === 'ready' && revision > readings.value.readingsRevision) void load()
-  })
+  watch(() => study()?.readingsRevision, loadIfBehind)
 
   return { worker, readings: computed(() => readings.value), load, outbox, grid, ...answer }
 }

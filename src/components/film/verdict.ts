@@ -84,6 +84,11 @@ export function stepText(step: number, study: Pick<Study, 'exposureKind' | 'prin
   return irradiance === null ? formatExposure(step, study.exposureKind) : `${formatNumber(step / irradiance, decimals)} s`
 }
 
+/** What to set on the printer for an exposure that the study counts in mJ/cm²; null where it counts seconds, or nobody knows the irradiance. */
+export function printerTime(exposure: number, study: Pick<Study, 'exposureKind' | 'printer'>): string | null {
+  return study.exposureKind === 'seconds' || study.printer.irradianceMilliwattsPerSquareCentimetre === null ? null : stepText(exposure, study)
+}
+
 /** Decimals of a printer step: 0.05 has two. */
 export function decimalsOf(step: number): number {
   for (let decimals = 0; decimals < 4; decimals++) if (Math.abs(step * 10 ** decimals - Math.round(step * 10 ** decimals)) < 1e-9) return decimals

@@ -1,6 +1,6 @@
 import { describe, expect, it } from 'vitest'
 import { defaultFilmSettings, type Study } from '#shared/contracts/studies.ts'
-import { rulerOf, stepText, surenessOf, verdictOf } from '@/components/film/verdict.ts'
+import { printerTime, rulerOf, stepText, surenessOf, verdictOf } from '@/components/film/verdict.ts'
 import { printerLimits } from '@/composables/useFilmAnswer.ts'
 import { exposureOnPrinter as onPrinter } from '#shared/film/index.ts'
 import { filmAnswer } from '@/workers/film-answer.ts'
@@ -54,6 +54,8 @@ describe('the verdict', () => {
     expect(verdict.estimate).toContain('mJ/cm²')
     expect(verdict.remarks.join()).toContain('3.4 mW/cm²')
     expect(stepText(2.1, study)).toBe('2.1 s')
+    expect(printerTime(2.1 * 3.4, dose)).toBe('2.1 s')
+    expect(printerTime(2.1, study)).toBeNull()
   })
 
   it('does not call an extrapolated answer good', () => {
