@@ -23,7 +23,7 @@ async function ids(shopId: string): Promise<Record<string, string>> {
 
 const fill = (path: string, values: Record<string, string>) => path.replace(/\{(\w+)\}/g, (_, name: string) => values[name] ?? name)
 
-describe.each<[Theme, number]>([['daylight', 1280], ['safelight', 820]])('in %s at %i px', (theme, width) => {
+describe.concurrent.each<[Theme, number]>([['daylight', 1280], ['safelight', 820]])('in %s at %i px', (theme, width) => {
   it('every open page is accessible and fits the window', async () => {
     const visitor = await stage.open({ theme, width })
     for (const path of openPages) {

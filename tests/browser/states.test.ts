@@ -17,7 +17,7 @@ async function expectGood(page: Page, name: string): Promise<void> {
 const withoutAnswers = (complaints: readonly string[]) => complaints.filter(text => !text.startsWith('Failed to load resource'))
 
 // Making a shop changes where a person lands: one for each run.
-describe.each<[Theme, number, string]>([['daylight', 1280, 'technician'], ['safelight', 820, 'approver']])('in %s at %i px', (theme, width, founder) => {
+describe.concurrent.each<[Theme, number, string]>([['daylight', 1280, 'technician'], ['safelight', 820, 'approver']])('in %s at %i px', (theme, width, founder) => {
   it('a shop without anything, its forms with mistakes, and a study without films are accessible and fit the window', async () => {
     const visitor = await stage.open({ theme, width })
     const { page } = visitor
