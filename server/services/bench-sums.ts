@@ -1,12 +1,13 @@
 import { createHash } from 'node:crypto'
 import { z } from 'zod'
 import { benchStudySchema, type BenchStudy } from '#shared/contracts/bench.ts'
-import { filmFitInputs, layerRuleOf } from '#shared/contracts/film-fit-inputs.ts'
-import { acceptedCurve, answerFindings, curveExposureForLayer, exposureOnPrinter, filmLibraryVersion, fitWorkingCurve, type Interval } from '#shared/film/index.ts'
+import { filmFitInputs } from '#shared/contracts/film-fit-inputs.ts'
+import { answerFindings, exposureOnPrinter, filmLibraryVersion, fitWorkingCurve, type Interval } from '#shared/film/index.ts'
 import { StatsError } from '#shared/stats/index.ts'
 import type { Dependencies } from '../dependencies.ts'
 import { loggable } from '../loggable.ts'
 import { keepBenchSums, readBenchReadings, type BenchFacts, type BenchReading, type BenchSumToKeep } from '../repositories/bench.ts'
+import { studyAnswer } from './film-fit.ts'
 import { groupBy } from './group-by.ts'
 
 type StudyFacts = BenchFacts['studies'][number]
@@ -107,8 +108,7 @@ function fitted(study: StudyFacts, printer: PrinterFacts, readings: readonly Ben
   const inputs = filmFitInputs(study, readings.map(reading => ({ ...reading, id: '' })))
   const straight = fitWorkingCurve(inputs)
   if (straight.kind === 'refused') return refused(straight.detail, ['no-films', 'one-film', 'one-exposure'].includes(straight.reason))
-  const curve = acceptedCurve(inputs, straight, study.film)
-  const answer = curveExposureForLayer(curve, straight, { layerHeightMicrometres: study.layerHeightMicrometres, rule: layerRuleOf(study.film) })
+  const { curve, exposure: answer } = studyAnswer(study, inputs, straight)
   if (answer.kind === 'refused') return refused(answer.detail)
   const numbers = curve.name === 'with-missing-films' ? curve.fit : straight
   const estimates = {

@@ -6,7 +6,7 @@ import { notFound } from '../errors.ts'
 import type { StudyKey } from '../repositories/film-readings.ts'
 import { readStudy } from '../repositories/studies.ts'
 import { fitCsv, layerRulesOf } from './film-fit-csv.ts'
-import { readFilmFit } from './film-fit.ts'
+import { readFilmFit, studyAnswer } from './film-fit.ts'
 import { allReadings } from './film-readings.ts'
 import { readingHeader, readingLines } from './film-readings-csv.ts'
 
@@ -37,7 +37,7 @@ export async function exportReadings(database: Executor, key: StudyKey): Promise
 /** Parameters and answers of the working curve as CSV. */
 export async function exportFit(database: Executor, key: StudyKey): Promise<ExportedFile> {
   const fit = await atOnce(database, transaction => readFilmFit(transaction, key))
-  return { text: fitCsv(fit.study, fit), fileName: `${fit.study.name} film fit.csv` }
+  return { text: fitCsv(fit), fileName: `${fit.study.name} film fit.csv` }
 }
 
 /**
@@ -47,6 +47,8 @@ export async function exportFit(database: Executor, key: StudyKey): Promise<Expo
 export async function exportFilmChapter({ database, clock }: Pick<Dependencies, 'database' | 'clock'>, key: StudyKey): Promise<ExportedFile> {
   const { study, readings, inputsHash, libraryVersion, outcome } = await atOnce(database, transaction => readFilmFit(transaction, key))
   const { film: settings, ...rest } = study
+  const inputs = filmFitInputs(study, readings)
+  const answer = outcome.kind === 'fitted' ? studyAnswer(study, inputs, outcome) : null
   const chapter = {
     kind: 'fanlight-film',
     formatVersion: 1,
@@ -55,7 +57,9 @@ export async function exportFilmChapter({ database, clock }: Pick<Dependencies, 
     study: rest,
     settings,
     readings,
-    fit: { libraryVersion, inputsHash, inputs: filmFitInputs(study, readings), outcome },
+    fit: { libraryVersion, inputsHash, inputs, outcome },
+    // The study's own number, by the curve that was accepted for it.
+    answer: answer === null ? null : { curve: answer.curve.name, remark: answer.curve.remark, exposureForLayer: answer.exposure },
     exposuresForLayer: outcome.kind === 'fitted'
       ? compareLayerRules(outcome, { layerHeightMicrometres: study.layerHeightMicrometres, rules: layerRulesOf(settings) })
       : null,

@@ -1,6 +1,8 @@
-import { compareLayerRules, type Estimate, type Interval, type LayerRuleChoice, type WorkingCurveFit, type WorkingCurveOutcome } from '#shared/film/index.ts'
+import { filmFitInputs } from '#shared/contracts/film-fit-inputs.ts'
+import { compareLayerRules, type Estimate, type Interval, type LayerRuleChoice, type WorkingCurveFit } from '#shared/film/index.ts'
 import { toCsv, type CsvValue } from '#shared/imports/index.ts'
 import type { Study } from '#shared/contracts/studies.ts'
+import { studyAnswer, type FilmFit, type StudyAnswer } from './film-fit.ts'
 
 /** The rules of a layer with the study's own values; the far-side rule has no setting yet and takes its starting value. */
 export const layerRulesOf = (film: Study['film']): readonly LayerRuleChoice[] => [
@@ -25,8 +27,16 @@ const estimateRow = (quantity: string, unit: string, estimate: Estimate): readon
 
 const numberRow = (quantity: string, unit: string, value: number): readonly CsvValue[] => [quantity, unit, value, null, null, null, null, null]
 
-const modelRemark = (model: Study['film']['model']) =>
-  model === 'straight-line' ? model : `straight-line (the study uses ${model}, whose answers are not in this file)`
+const modelRemark = ({ curve }: StudyAnswer) =>
+  curve.name === 'straight-line' ? curve.name : `straight-line (the study answers with the ${curve.name} curve: see exposure_for_layer)`
+
+/** What the study answers with. */
+function answerRow({ curve, exposure }: StudyAnswer, exposureUnit: string): readonly CsvValue[] {
+  const by = [`answer of this study, by the ${curve.name} curve`, curve.remark]
+  if (exposure.kind === 'refused') return ['exposure_for_layer', exposureUnit, null, null, null, null, null, [...by, exposure.detail].filter(Boolean).join('; ')]
+  const remarks = [...by, exposure.extrapolated ? 'outside the measured thicknesses' : null, intervalRemark(exposure.meanInterval)]
+  return ['exposure_for_layer', exposureUnit, exposure.value, null, ...intervalCells(exposure.meanInterval), remarks.filter(Boolean).join('; ')]
+}
 
 function layerRows(study: Study, fit: WorkingCurveFit, exposureUnit: string): readonly (readonly CsvValue[])[] {
   const { byRule } = compareLayerRules(fit, { layerHeightMicrometres: study.layerHeightMicrometres, rules: layerRulesOf(study.film) })
@@ -48,9 +58,9 @@ function layerRows(study: Study, fit: WorkingCurveFit, exposureUnit: string): re
  * Parameters, answers and findings of a study's straight line as CSV, one quantity a row. A fit that was refused is one
  * row that says why.
  */
-export function fitCsv(study: Study, fit: { readonly outcome: WorkingCurveOutcome; readonly inputsHash: string; readonly libraryVersion: string }): string {
+export function fitCsv(fit: FilmFit): string {
+  const { study, outcome } = fit
   const exposureUnit = study.exposureKind === 'seconds' ? 'seconds' : 'mj_per_cm2'
-  const { outcome } = fit
   const provenance = [
     ['inputs_hash', 'sha256', null, null, null, null, null, fit.inputsHash],
     ['library_version', '', null, null, null, null, null, fit.libraryVersion],
@@ -58,10 +68,11 @@ export function fitCsv(study: Study, fit: { readonly outcome: WorkingCurveOutcom
   if (outcome.kind === 'refused') {
     return toCsv([header, ['refused', '', null, null, null, null, null, `${outcome.reason}: ${outcome.detail}`], ...provenance])
   }
+  const answer = studyAnswer(study, filmFitInputs(study, fit.readings), outcome)
   const [[interceptVariance, covariance], [, slopeVariance]] = outcome.covariance
   return toCsv([
     header,
-    ['model', '', null, null, null, null, null, modelRemark(study.film.model)],
+    ['model', '', null, null, null, null, null, modelRemark(answer)],
     estimateRow('penetration_depth', 'micrometres', outcome.penetrationDepthMicrometres),
     estimateRow('critical_exposure', exposureUnit, outcome.criticalExposure),
     estimateRow('intercept', 'micrometres', outcome.interceptMicrometres),
@@ -76,6 +87,7 @@ export function fitCsv(study: Study, fit: { readonly outcome: WorkingCurveOutcom
     numberRow('exposures', '', outcome.levelCount),
     numberRow('measured_depth.lowest', 'micrometres', outcome.measuredRange.depthMicrometresMin),
     numberRow('measured_depth.highest', 'micrometres', outcome.measuredRange.depthMicrometresMax),
+    answerRow(answer, exposureUnit),
     ...layerRows(study, outcome, exposureUnit),
     ...outcome.findings.map(finding => [`finding.${finding.code}`, '', null, null, null, null, null, `${finding.severity}: ${finding.sentence}`]),
     ...provenance,

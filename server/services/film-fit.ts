@@ -1,8 +1,11 @@
 import { createHash } from 'node:crypto'
 import type { StoredFilmReading } from '#shared/contracts/film.ts'
-import { filmFitInputs } from '#shared/contracts/film-fit-inputs.ts'
+import { filmFitInputs, layerRuleOf } from '#shared/contracts/film-fit-inputs.ts'
 import type { Study } from '#shared/contracts/studies.ts'
-import { filmLibraryVersion, fitWorkingCurve, type WorkingCurveOptions, type WorkingCurveOutcome } from '#shared/film/index.ts'
+import {
+  acceptedCurve, curveExposureForLayer, filmLibraryVersion, fitWorkingCurve,
+  type AcceptedCurve, type CurveExposureOutcome, type WorkingCurveFit, type WorkingCurveOptions, type WorkingCurveOutcome,
+} from '#shared/film/index.ts'
 import type { Executor } from '../dependencies.ts'
 import { notFound } from '../errors.ts'
 import { readStudy } from '../repositories/studies.ts'
@@ -32,4 +35,16 @@ export async function readFilmFit(database: Executor, key: { shopId: string; stu
   const readings = await allReadings(database, key)
   const inputs = filmFitInputs(study, readings)
   return { study, readings, inputsHash: hashFilmInputs(inputs), libraryVersion: filmLibraryVersion, outcome: fitWorkingCurve(inputs) }
+}
+
+export interface StudyAnswer {
+  /** The curve accepted for the study; the straight line where it cannot be fitted, which `curve.remark` then says. */
+  readonly curve: AcceptedCurve
+  readonly exposure: CurveExposureOutcome
+}
+
+/** The exposure for the study's layers by its curve and its rule: what the study answers with. */
+export function studyAnswer(study: Pick<Study, 'film' | 'layerHeightMicrometres'>, inputs: WorkingCurveOptions, straight: WorkingCurveFit): StudyAnswer {
+  const curve = acceptedCurve(inputs, straight, study.film)
+  return { curve, exposure: curveExposureForLayer(curve, straight, { layerHeightMicrometres: study.layerHeightMicrometres, rule: layerRuleOf(study.film) }) }
 }

@@ -7,7 +7,7 @@ import { study } from '#db/schema/index.ts'
 import { filmReadingSchema, getFilmFit, type FilmReadingSave } from '#shared/contracts/film.ts'
 import { importFilmReadings } from '#shared/contracts/film-imports.ts'
 import { filmSettingsSchema } from '#shared/contracts/studies.ts'
-import { exposureForDepth, fitWorkingCurve, type WorkingCurveOptions } from '#shared/film/index.ts'
+import { exposureForDepth, fitQuadraticCurve, fitWorkingCurve, modelExposureForDepth, type WorkingCurveOptions } from '#shared/film/index.ts'
 import { guessFilmImportMapping } from '#shared/imports/index.ts'
 import { cell, csvHeaders, importPath, startFilmShop, type FilmClient, type FilmShop } from '#tests/helpers/film-shop.ts'
 
@@ -120,6 +120,21 @@ describe('the fit as CSV', () => {
     expect(value('exposure_for_layer.constant-overcure')).toBeCloseTo(9.874_361_96 * Math.exp(100 / 99.180_459_22), 6)
     expect(rows.get('exposure_for_layer.constant-overcure')?.remark).toContain('rule of this study')
     expect([...rows.keys()]).toEqual(expect.arrayContaining(['covariance.intercept_slope', 'exposure_for_layer.constant-ratio', 'exposure_for_layer.far-side-dose', 'inputs_hash', 'library_version']))
+  })
+
+  it('tells the number of the curve that was accepted for the study, as the chapter does', async () => {
+    await save(...films())
+    const stored = JSON.parse((await get('film.json')).text)
+    await shop.pool.query(`update study set film = jsonb_set(film, '{model}', '"quadratic"') where id = $1`, [studyId])
+    const quadratic = fitQuadraticCurve(stored.fit.inputs)
+    const expected = quadratic.kind === 'fitted' ? modelExposureForDepth(quadratic, 100) : null
+    if (expected?.kind !== 'answered') throw new Error('must answer')
+    const rows = new Map(table((await get('film-fit.csv')).text).map(row => [row.quantity, row]))
+    expect(Number(rows.get('exposure_for_layer')?.value)).toBe(expected.value)
+    expect(rows.get('exposure_for_layer')?.remark).toContain('by the quadratic curve')
+    expect(rows.get('model')?.remark).toContain('straight-line (the study answers with the quadratic curve')
+    expect(JSON.parse((await get('film.json')).text).answer).toMatchObject({ curve: 'quadratic', remark: null, exposureForLayer: { kind: 'answered', value: expected.value } })
+    expect(stored.answer).toMatchObject({ curve: 'straight-line', exposureForLayer: { value: stored.exposuresForLayer.byRule[0].value } })
   })
 
   it('says why there is no fit', async () => {
