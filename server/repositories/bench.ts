@@ -4,7 +4,7 @@ import { filmSettingsSchema } from '#shared/contracts/studies.ts'
 import type { Executor } from '../dependencies.ts'
 
 /** A study with more readings than this is summed up from every k-th: the bench is a glance, the study is exact. */
-const readingsPerStudyMax = 5000
+const readingsPerStudyMax = 2000
 
 /** The kind under which the bench keeps its sums in the table of fits. */
 const benchKind = 'bench'

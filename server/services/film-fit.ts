@@ -37,6 +37,9 @@ export async function readFilmFit(database: Executor, key: { shopId: string; stu
   return { study, readings, inputsHash: hashFilmInputs(inputs), libraryVersion: filmLibraryVersion, outcome: fitWorkingCurve(inputs) }
 }
 
+/** Other curves than the straight line take seconds beyond this, and everybody else's calls would wait for them. */
+const bentCurveReadingsMax = 2000
+
 export interface StudyAnswer {
   /** The curve accepted for the study; the straight line where it cannot be fitted, which `curve.remark` then says. */
   readonly curve: AcceptedCurve
@@ -45,6 +48,11 @@ export interface StudyAnswer {
 
 /** The exposure for the study's layers by its curve and its rule: what the study answers with. */
 export function studyAnswer(study: Pick<Study, 'film' | 'layerHeightMicrometres'>, inputs: WorkingCurveOptions, straight: WorkingCurveFit): StudyAnswer {
+  const { model, useCensored } = study.film
+  if ((model !== 'straight-line' || useCensored) && inputs.readings.length > bentCurveReadingsMax) {
+    const detail = `The server fits the curve chosen for this study to at most ${bentCurveReadingsMax} readings; the page of the study shows its answer.`
+    return { curve: { name: 'straight-line', fit: straight, remark: null }, exposure: { kind: 'refused', detail } }
+  }
   const curve = acceptedCurve(inputs, straight, study.film)
   return { curve, exposure: curveExposureForLayer(curve, straight, { layerHeightMicrometres: study.layerHeightMicrometres, rule: layerRuleOf(study.film) }) }
 }

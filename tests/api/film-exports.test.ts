@@ -3,7 +3,7 @@ import { v7 } from 'uuid'
 import { afterAll, beforeAll, beforeEach, describe, expect, it } from 'vitest'
 import { z } from 'zod'
 import { eq } from 'drizzle-orm'
-import { study } from '#db/schema/index.ts'
+import { filmReading, study } from '#db/schema/index.ts'
 import { filmReadingSchema, getFilmFit, type FilmReadingSave } from '#shared/contracts/film.ts'
 import { importFilmReadings } from '#shared/contracts/film-imports.ts'
 import { filmSettingsSchema } from '#shared/contracts/studies.ts'
@@ -135,6 +135,17 @@ describe('the fit as CSV', () => {
     expect(rows.get('model')?.remark).toContain('straight-line (the study answers with the quadratic curve')
     expect(JSON.parse((await get('film.json')).text).answer).toMatchObject({ curve: 'quadratic', remark: null, exposureForLayer: { kind: 'answered', value: expected.value } })
     expect(stored.answer).toMatchObject({ curve: 'straight-line', exposureForLayer: { value: stored.exposuresForLayer.byRule[0].value } })
+  })
+
+  it.each([[2000, 'answered'], [2001, 'refused']])('of %i readings by another curve is %s: nobody waits seconds for an export', async (count, kind) => {
+    const rows = Array.from({ length: count }, (_, i) => ({
+      id: v7(), shopId: ids.shopId, studyId, exposure: 20 + (i % 10) * 5, exposureText: '', replicate: i, depthMicrometres: 100 * Math.log((20 + (i % 10) * 5) / 10) + (i % 7) - 3, depthText: '', state: 'measured' as const,
+    }))
+    await shop.db.insert(filmReading).values(rows)
+    await shop.pool.query(`update study set film = jsonb_set(film, '{model}', '"quadratic"') where id = $1`, [studyId])
+    expect(JSON.parse((await get('film.json')).text).answer.exposureForLayer.kind).toBe(kind)
+    // The straight line of all readings is there whatever their number.
+    expect(table((await get('film-fit.csv')).text).find(row => row.quantity === 'films')?.value).toBe(String(count))
   })
 
   it('says why there is no fit', async () => {
