@@ -11,6 +11,9 @@ import { saySignIns, startServer, stopServer } from './lib/server-process.mjs'
 
 const began = performance.now()
 
+/** A port that the person named; 0 and nothing leave the choice to us. */
+const isFixed = wanted => wanted !== undefined && wanted !== '' && wanted !== '0'
+
 async function startOnFreePort(own, databaseUrl) {
   const logFile = join(own.folder, 'server-log')
   for (let attempt = 1; ; attempt++) {
@@ -28,7 +31,7 @@ async function startOnFreePort(own, databaseUrl) {
       })
     } catch (error) {
       // Another checkout that starts at the same moment may have taken the port since.
-      if (isClosing() || attempt === 3 || process.env.PORT || await isFree(port, process.env.HOST)) throw error
+      if (isClosing() || attempt === 3 || isFixed(process.env.PORT) || await isFree(port, process.env.HOST)) throw error
     }
   }
 }
