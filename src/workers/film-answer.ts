@@ -8,7 +8,7 @@ import { curveSamples } from './film-curves.ts'
 import type { ChartPoint, CurrentReading, CurveSample, FilmAnswer, FilmQuestion, LayerAnswers, ReadingCounts } from './film-answer-types.ts'
 
 /** More dots than this cover each other and cost the page its speed. */
-const chartPointsMax = 800
+const chartPointsMax = 400
 const samples = 72
 
 /** The inputs of the fit: the same on the server, to the last digit. */
