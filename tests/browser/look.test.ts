@@ -9,6 +9,9 @@ afterAll(() => stage.close())
 
 const openPages = ['/sign-in', '/sign-up', '/sign-up/confirm?token=this-token-is-used-up-long-ago', '/reset', '/reset/new?token=x', '/invitation?token=this-token-is-used-up-long-ago', '/development/mailbox', '/no-such-page']
 
+/** Twice some thirty pages under axe, on a machine that others keep busy. */
+const pagesMilliseconds = 400_000
+
 /** Every page of a shop; `{study}` is filled in with one of the demo's. */
 const shopPages = [
   'bench', 'studies', 'studies?q=nothing-fits-this', 'studies/new', 'printers', 'printers/new', 'resins', 'resins/new', 'lots', 'lots/new', 'pairings', 'members', 'no-such-page',
@@ -47,7 +50,7 @@ describe.concurrent.each<[Theme, number]>([['daylight', 1280], ['safelight', 820
     }
     expect(visitor.complaints).toEqual([])
     await visitor.close()
-  })
+  }, pagesMilliseconds)
 })
 
 describe('moving about', () => {
