@@ -43,12 +43,20 @@ export function surenessOf(answer: ShownExposure, printer: PrinterLimits, degree
   return { word: degreesOfFreedom < 3 ? 'Too few films.' : 'Very rough.', kind: 'serious', sentence: `${within} More films are needed.` }
 }
 
+/** A narrow interval around the wrong line is no good answer: what the films say against the curve comes first. */
+function doubted(sureness: Sureness, answer: Extract<FilmAnswer, { kind: 'fitted' }>): Sureness {
+  const serious = answer.findings.some(finding => finding.severity === 'serious')
+  if (!serious || sureness.kind !== 'good') return sureness
+  return { word: 'In doubt.', kind: 'caution', sentence: `${sureness.sentence} But the films speak against the curve: see “What the films say”.` }
+}
+
 function nextStep(study: Study, answer: FilmAnswer, sureness: Sureness | null, plannedLeft: number): string {
   if (plannedLeft > 0) return `Expose and measure the ${plannedLeft === 1 ? 'last planned film' : `${plannedLeft} planned films still open`}.`
   if (answer.kind === 'refused' && answer.implausible.length === 0) return answer.detail
   if (answer.implausible.length > 0) return `Look at the ${answer.implausible.length === 1 ? 'marked film' : `${answer.implausible.length} marked films`} again: measure once more, or exclude with a reason.`
   if (sureness?.kind === 'serious') return 'Plan more films around the depth wanted.'
   if (answer.kind === 'fitted' && sureness?.word === 'Outside the films.') return `Add films near ${formatLength('kind' in answer.headline ? study.layerHeightMicrometres : answer.headline.depthMicrometres)}.`
+  if (sureness?.word === 'In doubt.') return 'Read what the films say, and compare the other curves.'
   return 'Confirm it with a print: films tell depth, not fine features.'
 }
 
@@ -64,7 +72,7 @@ export function verdictOf(study: Study, answer: FilmAnswer | null, printer: Prin
   const remarks = answer.curveRemark === null ? [] : [answer.curveRemark]
   const { headline } = answer
   if ('kind' in headline) return { ...nothing, what: headline.detail, remarks, next: 'Choose the straight line or another rule.' }
-  const sureness = surenessOf(headline, printer, answer.numbers.degreesOfFreedom)
+  const sureness = doubted(surenessOf(headline, printer, answer.numbers.degreesOfFreedom), answer)
   const decided = headline.meanInterval.kind === 'finite'
   if (study.exposureKind === 'mJ/cm2' && headline.step !== null) remarks.push(`The step in seconds rests on the printer’s irradiance, ${study.printer.irradianceMilliwattsPerSquareCentimetre} mW/cm², taken as exact.`)
   if (headline.beyondPrinter !== null) remarks.push(`This is ${headline.beyondPrinter === 'below' ? 'less than' : 'more than'} the printer can expose; its nearest step is shown.`)

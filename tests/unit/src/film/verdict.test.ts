@@ -46,6 +46,16 @@ describe('the verdict', () => {
     expect(verdictOf(study, answerOf(slip), limits, 0).next).toContain('marked film')
   })
 
+  it('does not call a narrow interval good while the films speak against the curve', () => {
+    // Light of two kinds: depth bends upwards, so evenly that the straight line's interval stays narrow.
+    const bent: readonly CurrentReading[] = [1.6, 1.6, 2.1, 2.1, 2.9, 2.9, 4, 4, 5.7, 5.7, 8.2, 8.2].map((exposure, i) => ({
+      ...first, id: `b${i}`, exposure, replicate: 1 + (i % 2), depthMicrometres: 120 * Math.log(exposure / 1.13) + 30 * Math.log(exposure / 1.13) ** 2 + (i % 2),
+    }))
+    const verdict = verdictOf(study, answerOf(bent), limits, 0)
+    expect(verdict.sureness.word).toBe('In doubt.')
+    expect(verdict.next).toContain('what the films say')
+  })
+
   it('tells the printer seconds where the study counts mJ/cm², and says what that rests on', () => {
     const dose: Study = { ...study, exposureKind: 'mJ/cm2' }
     const doses = readings.map(reading => ({ ...reading, exposure: reading.exposure * 3.4 }))
