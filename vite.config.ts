@@ -1,11 +1,19 @@
 import { fileURLToPath } from 'node:url'
 import vue from '@vitejs/plugin-vue'
+import type { Plugin } from 'vite'
 import { defineConfig } from 'vitest/config'
 
 const apiPort = process.env.FANLIGHT_API_PORT ?? '3000'
 
+/** The package's entry is one CommonJS file; from its source only what a fit needs is shipped. */
+const slimMatrix: Plugin = {
+  name: 'slim-matrix',
+  apply: 'build',
+  config: () => ({ resolve: { alias: { 'ml-matrix': fileURLToPath(new URL('./node_modules/ml-matrix/src/index.js', import.meta.url)) } } }),
+}
+
 export default defineConfig({
-  plugins: [vue()],
+  plugins: [vue(), slimMatrix],
   resolve: { alias: { '@': fileURLToPath(new URL('./src', import.meta.url)) } },
   // Licence notices stand once, in dist/licenses.md, instead of before each of hundreds of modules.
   worker: { format: 'es', rolldownOptions: { output: { comments: { legal: false } } } },
