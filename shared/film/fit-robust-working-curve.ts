@@ -103,5 +103,7 @@ function sentenceFor(answers: RobustWorkingCurve['answers'], weights: readonly n
   const change = 100 * (first.robust / first.straight - 1)
   const aside = weights.filter(weight => weight < 0.2).length
   const films = aside === 0 ? 'films far from the others' : aside === 1 ? 'one film' : `${aside} films`
-  return `A curve that trusts no single film sets ${films} aside and asks for ${Math.abs(change).toFixed(1)} % ${change < 0 ? 'less' : 'more'} exposure for ${Math.round(first.depthMicrometres)} µm, outside the interval. Look at those films before you use either.`
+  // One slip by a factor of a hundred throws the straight line anywhere: a percentage would say nothing.
+  const amount = change > 100 ? 'several times the exposure' : `${Math.abs(change).toFixed(1)} % ${change < 0 ? 'less' : 'more'} exposure`
+  return `A curve that trusts no single film sets ${films} aside and asks for ${amount} for ${Math.round(first.depthMicrometres)} µm, outside the interval. Look at those films before you use either.`
 }
