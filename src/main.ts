@@ -9,6 +9,15 @@ import App from './App.vue'
 import { queryClient } from './api/query-client.ts'
 import { createAppRouter } from './router/index.ts'
 
+// A page from before a new release asks for pieces that are gone: load the new one, once; what was typed is kept.
+const reloadedKey = 'fanlight.reloaded'
+window.addEventListener('vite:preloadError', event => {
+  if (Date.now() - Number(sessionStorage.getItem(reloadedKey) ?? 0) < 10_000) return
+  sessionStorage.setItem(reloadedKey, String(Date.now()))
+  event.preventDefault()
+  window.location.reload()
+})
+
 const app = createApp(App)
 app.use(createPinia())
 app.use(VueQueryPlugin, { queryClient })
