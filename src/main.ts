@@ -12,7 +12,8 @@ import { createAppRouter } from './router/index.ts'
 // A page from before a new release asks for pieces that are gone: load the new one, once; what was typed is kept.
 const reloadedKey = 'fanlight.reloaded'
 window.addEventListener('vite:preloadError', event => {
-  if (Date.now() - Number(sessionStorage.getItem(reloadedKey) ?? 0) < 10_000) return
+  // Without a connection a reload would take the page away.
+  if (!navigator.onLine || Date.now() - Number(sessionStorage.getItem(reloadedKey) ?? 0) < 10_000) return
   sessionStorage.setItem(reloadedKey, String(Date.now()))
   event.preventDefault()
   window.location.reload()
