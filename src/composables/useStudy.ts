@@ -1,6 +1,6 @@
 import { useMutation, useQuery, useQueryClient } from '@tanstack/vue-query'
 import { computed, shallowRef } from 'vue'
-import { getStudy, studySchema, updateStudy, type Study, type StudyChange } from '#shared/contracts/studies.ts'
+import { getStudy, restoreStudy, retireStudy, studySchema, updateStudy, type Study, type StudyChange } from '#shared/contracts/studies.ts'
 import { ApiError, call } from '@/api/call.ts'
 
 export interface StudyPlace {
@@ -55,6 +55,19 @@ export function useStudy(place: () => StudyPlace) {
     }
   }
 
+  /** Retires or restores the study as it is shown; answers the refusal's sentence, or null when it is done. */
+  async function changeLife(operation: 'retire' | 'restore'): Promise<string | null> {
+    const baseVersion = query.data.value?.version
+    if (baseVersion === undefined) return 'The study is not loaded yet.'
+    try {
+      client.setQueryData(key.value, await call(operation === 'retire' ? retireStudy : restoreStudy, { params: { ...place() }, baseVersion }))
+      void client.invalidateQueries()
+      return null
+    } catch (error) {
+      return error instanceof Error ? error.message : 'This did not work.'
+    }
+  }
+
   const keepMine = () => (stale.value === null ? Promise.resolve(false) : change(stale.value.change, stale.value.current.version))
   function takeTheirs(): void {
     if (stale.value !== null) client.setQueryData(key.value, stale.value.current)
@@ -62,6 +75,6 @@ export function useStudy(place: () => StudyPlace) {
   }
 
   const failure = computed(() => (stale.value === null ? save.error.value : null))
-  return { study: query.data, error: query.error, reload: () => query.refetch(), change, saving: save.isPending, failure, stale, keepMine, takeTheirs }
+  return { study: query.data, error: query.error, reload: () => query.refetch(), change, changeLife, saving: save.isPending, failure, stale, keepMine, takeTheirs }
 }
 export type StudyHandle = ReturnType<typeof useStudy>

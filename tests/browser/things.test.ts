@@ -106,3 +106,21 @@ describe('a list', () => {
     await visitor.close()
   })
 })
+
+describe('a study', () => {
+  it('is retired from its own page, can only be read then, and comes back by the message’s undo', async () => {
+    const visitor = await stage.open()
+    const { page } = visitor
+    const shopId = await visitor.signInAs('engineer')
+    await visitor.goto(`/shop/${shopId}/studies`)
+    await page.getByRole('link', { name: 'Everyday grey on the south bench' }).click()
+    await page.getByRole('button', { name: 'Edit study' }).click()
+    await page.getByRole('button', { name: 'Retire this study' }).click()
+    await page.getByText('This study is retired').waitFor()
+    expect(await page.getByRole('button', { name: 'Edit study' }).count()).toBe(0)
+    await page.getByRole('button', { name: 'Undo', exact: true }).last().click()
+    await page.getByText('The study is in use again.').waitFor()
+    await page.getByRole('button', { name: 'Edit study' }).waitFor()
+    await visitor.close()
+  })
+})
