@@ -102,6 +102,7 @@ export default defineConfig(
   },
   { files: ['src/**/*.{ts,vue}'], languageOptions: { globals: { ...globals.browser, ...globals.worker } } },
   { files: ['server/**/*.ts', 'db/**/*.{ts,mjs}', 'tests/**/*.{ts,mjs}', 'scripts/**/*.mjs', '*.{ts,js}'], languageOptions: { globals: globals.node } },
+  { files: ['**/*.cjs'], languageOptions: { sourceType: 'commonjs', globals: globals.node } },
   {
     files: ['shared/**/*.ts'],
     rules: {

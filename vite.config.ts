@@ -5,16 +5,18 @@ import { defineConfig } from 'vitest/config'
 
 const apiPort = process.env.FANLIGHT_API_PORT ?? '3000'
 
-/** The package's entry is one CommonJS file; from its source only what a fit needs is shipped. */
-const slimMatrix: Plugin = {
-  name: 'slim-matrix',
+const fileOf = (path: string) => fileURLToPath(new URL(path, import.meta.url))
+
+/** ml-matrix's entry is one CommonJS file: from its source only what a fit needs is shipped. Nobody reads what debug would log. */
+const slimPackages: Plugin = {
+  name: 'slim-packages',
   apply: 'build',
-  config: () => ({ resolve: { alias: { 'ml-matrix': fileURLToPath(new URL('./node_modules/ml-matrix/src/index.js', import.meta.url)) } } }),
+  config: () => ({ resolve: { alias: { 'ml-matrix': fileOf('./node_modules/ml-matrix/src/index.js'), debug: fileOf('./src/workers/silent-debug.cjs') } } }),
 }
 
 export default defineConfig({
-  plugins: [vue(), slimMatrix],
-  resolve: { alias: { '@': fileURLToPath(new URL('./src', import.meta.url)) } },
+  plugins: [vue(), slimPackages],
+  resolve: { alias: { '@': fileOf('./src') } },
   // Licence notices stand once, in dist/licenses.md, instead of before each of hundreds of modules.
   worker: { format: 'es', rolldownOptions: { output: { comments: { legal: false } } } },
   build: { target: 'es2022', manifest: true, license: { fileName: 'licenses.md' }, rolldownOptions: { output: { comments: { legal: false } } } },

@@ -2,9 +2,9 @@ import { expose } from 'comlink'
 import { listFilmReadings, type StoredFilmReading } from '#shared/contracts/film.ts'
 import { getStudy, type Study } from '#shared/contracts/studies.ts'
 import { filmFitInputs } from '#shared/contracts/film-fit-inputs.ts'
-import { compareWorkingCurves, exposureFromProven, exposureOnPrinter, fitWorkingCurve, planFilmExposures, printThrough, type FilmPlan, type WorkingCurveFit } from '#shared/film/index.ts'
+import { compareWorkingCurves, exposureFromProven, exposureOnPrinter, fitWorkingCurve, planFilmExposures, printThrough, type FilmPlan, type WorkingCurveFit, type WorkingCurveOptions } from '#shared/film/index.ts'
 import { ApiError, OfflineError, call } from '@/api/call.ts'
-import { filmAnswer, rulesOf } from './film-answer.ts'
+import { filmAnswer, filmInputs, rulesOf } from './film-answer.ts'
 import type {
   ComparisonsAnswer, FilmAnswer, FilmQuestion, PrintThroughAnswer, PrinterLimits, ProvenAnswer, StudyComparisonAnswer,
 } from './film-answer-types.ts'
@@ -23,6 +23,7 @@ export type LoadOutcome =
 const book = new ReadingBook()
 let place = ''
 let lastFit: WorkingCurveFit | null = null
+let lastInputs: WorkingCurveOptions | null = null
 const noFit = { kind: 'refused', detail: 'There is no curve yet: measure films at three or more exposures.' } as const
 
 function failureOf(error: unknown): LoadOutcome {
@@ -78,8 +79,10 @@ export const filmWorker = {
   page: (window: GridWindow): GridPage => book.page(window),
 
   answer(question: FilmQuestion, over: TypedOver): FilmAnswer {
-    const { answer, fit } = filmAnswer(question, book.current(over))
+    const readings = book.current(over)
+    const { answer, fit } = filmAnswer(question, readings)
     lastFit = fit
+    lastInputs = filmInputs(question, readings)
     return answer
   },
 
@@ -99,6 +102,9 @@ export const filmWorker = {
       }),
     }
   },
+
+  /** What the last answer was fitted to, for another model in another worker. */
+  inputs: (): WorkingCurveOptions => lastInputs ?? { readings: [], exposureKind: 'seconds' },
 
   printThrough: (given: { readonly exposure: number; readonly layerHeightMicrometres: number; readonly layers: number; readonly recovery: number }): PrintThroughAnswer =>
     lastFit === null ? noFit : { kind: 'answered', ...printThrough({ fit: lastFit, ...given }) },

@@ -79,6 +79,17 @@ it('a new owner comes from sign-up to an exposure for a layer height that was ne
   expect(interval, numbers.slice(0, 600)).not.toBeNull()
   expect(Number(interval?.[2])).toBeLessThan(120)
   expect(Number(interval?.[3])).toBeGreaterThan(120)
+  // A timer that repeats to 20 % makes Dp less sure; the form and its worker are fetched when it is opened.
+  await page.getByText('Exposures that are uncertain themselves').click()
+  await page.getByText('With uncertain exposures: Dp').waitFor()
+  const widthOf = async () => {
+    const [, lower = '', upper = ''] = /Dp (?:\d+(?:\.\d+)?) µm, (\d+(?:\.\d+)?) to (\d+(?:\.\d+)?)/.exec((await page.getByText('With uncertain exposures: Dp').textContent()) ?? '') ?? []
+    return Number(upper) - Number(lower)
+  }
+  const narrow = await widthOf()
+  expect(narrow).toBeGreaterThan(0)
+  await page.getByLabel('Repeatability of the exposure').fill('20')
+  await expect.poll(widthOf).toBeGreaterThan(2 * narrow)
   await page.getByLabel('Another layer height').fill('30')
   const table = page.getByRole('region', { name: 'Exposure for 30 µm layers by each rule' })
   await table.waitFor()

@@ -1,0 +1,2 @@
+// Stands in builds for the package that numeric libraries log through while they are developed: it logs nothing.
+module.exports = () => () => {}
