@@ -2,6 +2,8 @@ import { useQueryClient } from '@tanstack/vue-query'
 import { computed, reactive, ref, shallowRef, toRaw, watch, type Ref } from 'vue'
 import { z } from 'zod'
 import { ApiError } from '@/api/call.ts'
+import { forgetFormDraft, keepFormDraft, readFormDraft } from '@/api/form-drafts.ts'
+import { useSessionStore } from '@/stores/session.ts'
 
 /** One field of a form, as people see it. */
 export interface FieldSpec {
@@ -53,6 +55,7 @@ const draftSchema = z.object({
 /** Input, checks, saving and the meeting of two edits, for every thing that people keep. */
 export function useThingForm<T extends Versioned>(options: Options<T>) {
   const queries = useQueryClient()
+  const draftOf = { userId: useSessionStore().user?.id ?? '', form: options.draftKey }
   const thing = shallowRef<T | null>(null)
   const values = reactive<Record<string, unknown>>({ ...options.initial })
   const busy = ref(false)
@@ -76,20 +79,15 @@ export function useThingForm<T extends Versioned>(options: Options<T>) {
     Object.fromEntries(Object.entries(clean()).filter(([name]) => toRaw(values)[name] !== base.values[name]))
 
   function readDraft(): void {
-    try {
-      const kept: unknown = JSON.parse(sessionStorage.getItem(options.draftKey) ?? 'null')
-      const draft = draftSchema.safeParse(kept)
-      if (!draft.success) return
-      Object.assign(values, draft.data.values)
-      base = draft.data.base
-      touched.value = true
-    } catch {
-      sessionStorage.removeItem(options.draftKey)
-    }
+    const draft = draftSchema.safeParse(readFormDraft(draftOf))
+    if (!draft.success) return
+    Object.assign(values, draft.data.values)
+    base = draft.data.base
+    touched.value = true
   }
 
   function forgetDraft(): void {
-    sessionStorage.removeItem(options.draftKey)
+    forgetFormDraft(draftOf)
     touched.value = false
   }
 
@@ -111,7 +109,7 @@ export function useThingForm<T extends Versioned>(options: Options<T>) {
     touched.value = true
     // Another content is another create: the old key would answer with the old thing.
     idempotencyKey = crypto.randomUUID()
-    sessionStorage.setItem(options.draftKey, JSON.stringify({ values: toRaw(values), base }))
+    keepFormDraft(draftOf, { values: toRaw(values), base })
   }
 
   watch(values, () => {
